@@ -1,0 +1,1 @@
+//! Interface state: (&mut Desk, Event) to effects.

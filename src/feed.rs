@@ -1,0 +1,1 @@
+//! The watched folder: which files are complete, and reading them.

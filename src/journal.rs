@@ -1,0 +1,1 @@
+//! The journal: SQLite in the state directory.

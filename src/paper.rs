@@ -1,0 +1,1 @@
+//! Picture to text: brief, JSON, CSV. Reads the Picture, computes nothing.

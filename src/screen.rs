@@ -1,0 +1,1 @@
+//! (&Picture, &Desk) to cells. Reads the Picture, computes nothing.

@@ -1,0 +1,1 @@
+//! The running watch: event loop, terminal, worker, clock.

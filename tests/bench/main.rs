@@ -1,0 +1,2 @@
+//! The benchmarks: they report and never fail a build by the clock.
+fn main() {}

@@ -1,0 +1,1 @@
+//! The suite: one binary, so that it is linked once and runs in parallel.
