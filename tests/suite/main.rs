@@ -1,1 +1,2 @@
 //! The suite: one binary, so that it is linked once and runs in parallel.
+mod house;
