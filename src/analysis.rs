@@ -3,10 +3,14 @@
 use std::sync::Arc;
 
 use crate::field::Grid;
+use crate::field::spline::Spline;
 use crate::instant::Hour;
 use crate::obs::Finding;
 use crate::report::{Identifier, Platform};
 use crate::sphere::Position;
+
+pub mod isobar;
+mod point;
 
 /// What an hour's analysis says at a point. Everything is analytic in the solution, so that values
 /// and derivatives agree.
@@ -67,4 +71,6 @@ pub struct HourAnalysis {
     pub winds_used: usize,
     /// Fingerprint of everything that went in: an hour is remade only when it changes.
     pub fingerprint: u64,
+    /// The smooth surface through the pressures, for [`HourAnalysis::at`].
+    surface: Spline,
 }

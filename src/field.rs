@@ -7,6 +7,7 @@ use crate::quantity::index_nearest;
 use crate::sphere::Position;
 
 pub mod derivative;
+pub mod spline;
 
 /// A regular grid on a conformal map: `columns` x `rows` points, `spacing_m` apart on the map.
 ///
