@@ -8,6 +8,7 @@ use serde::{Deserialize, Serialize};
 use crate::instant::Instant;
 use crate::report::Report;
 
+pub mod bufr;
 pub mod complaint;
 
 pub use complaint::Complaint;

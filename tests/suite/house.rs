@@ -139,7 +139,8 @@ fn every_room_has_its_floor() {
         rooms.insert(room, ());
     }
     for room in rooms.keys() {
-        let known = floor_of(room).is_some() || matches!(room.as_str(), "main" | "lib" | "rehearse");
+        let known =
+            floor_of(room).is_some() || matches!(room.as_str(), "main" | "lib" | "rehearse");
         assert!(known, "{room} stands on no floor");
     }
 }
