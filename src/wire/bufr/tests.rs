@@ -26,13 +26,13 @@ fn context(text: &str) -> Context {
 }
 
 /// Every message of a file: its offset and reading.
-fn messages(bytes: &[u8], context: &Context) -> Vec<(usize, MessageReading)> {
+fn messages(bytes: &[u8], context: Context) -> Vec<(usize, MessageReading)> {
     let mut decoder = Decoder::new();
     let mut out = Vec::new();
     let mut at = 0;
     while let Some(found) = bytes[at..].windows(4).position(|word| word == b"BUFR") {
         at += found;
-        let reading = decoder.read_message(&bytes[at..], at, context);
+        let reading = decoder.read_message(&bytes[at..], at, &context);
         let length = reading.length;
         out.push((at, reading));
         at += length;
@@ -41,7 +41,7 @@ fn messages(bytes: &[u8], context: &Context) -> Vec<(usize, MessageReading)> {
 }
 
 fn only(name: &str) -> Vec<Report> {
-    let found = messages(&data(&format!("made/{name}.bufr")), &context("2026-01-15T12:30Z"));
+    let found = messages(&data(&format!("made/{name}.bufr")), context("2026-01-15T12:30Z"));
     assert_eq!(found.len(), 1);
     let reading = found.into_iter().next().expect("one").1;
     assert_eq!(reading.complaints, []);
@@ -83,8 +83,8 @@ fn a_ship_by_308009() {
     assert_eq!((report.station.as_str(), report.platform), ("TESTSHP", Platform::Ship));
     near(report.course_deg, 45.0);
     near(report.speed_m_s, 9.0);
-    near(report.position.map(|place| place.latitude_deg()), 48.3);
-    near(report.position.map(|place| place.longitude_deg()), -15.6);
+    near(report.position.map(crate::sphere::Position::latitude_deg), 48.3);
+    near(report.position.map(crate::sphere::Position::longitude_deg), -15.6);
     near(report.pressure_msl_hpa, 995.8);
     near(report.pressure_change_3h_hpa, -2.7);
     assert_eq!(report.characteristic, Some(8));
@@ -114,8 +114,8 @@ fn a_drifter_by_315009_has_two_times() {
     let [report] = only("s315009").try_into().expect("one report");
     assert_eq!((report.station.as_str(), report.platform), ("6401234", Platform::Buoy));
     assert_eq!(report.time, Instant::parse("2026-01-15T12:00Z").expect("a time"));
-    near(report.position.map(|place| place.latitude_deg()), 55.123_45);
-    near(report.position.map(|place| place.longitude_deg()), -20.543_21);
+    near(report.position.map(crate::sphere::Position::latitude_deg), 55.123_45);
+    near(report.position.map(crate::sphere::Position::longitude_deg), -20.543_21);
     near(report.pressure_station_hpa, 978.5);
     near(report.sea_temperature_c, 8.3);
 }
@@ -193,7 +193,7 @@ fn every_element_agrees_with_another_decoder() {
             serde_json::from_slice(&data(&format!("{name}.json.gz"))).expect("JSON");
         let bytes = data(&format!("{name}.bufr.gz"));
         let context = context("2030-01-01T00:00Z");
-        let places: Vec<usize> = messages(&bytes, &context).iter().map(|found| found.0).collect();
+        let places: Vec<usize> = messages(&bytes, context).iter().map(|found| found.0).collect();
         assert_eq!(places.len(), truth.len(), "{name}");
         let mut decoder = Decoder::new();
         for (at, truth) in places.iter().zip(&truth) {
@@ -252,7 +252,7 @@ fn rows(name: &str) -> Vec<BTreeMap<String, String>> {
 fn an_hour_of_the_whole_world() {
     let bytes = data("perf_synop.bufr.gz");
     let truth = rows("perf_synop.csv.gz");
-    let found = messages(&bytes, &context("2018-11-02T12:30Z"));
+    let found = messages(&bytes, context("2018-11-02T12:30Z"));
     assert_eq!((found.len(), truth.len()), (15_824, 15_824));
     let reports: Vec<_> = found.iter().flat_map(|(_, reading)| &reading.reports).collect();
     let pressures = reports.iter().filter(|report| report.pressure_msl_hpa.is_some()).count();
@@ -285,8 +285,8 @@ fn an_hour_of_the_whole_world() {
         check("windSpeedAt10M", report.wind_speed_m_s, |x| x);
         check("airTemperatureAt2M", report.air_temperature_c, |x| x - 273.15);
         check("dewpointTemperatureAt2M", report.dew_point_c, |x| x - 273.15);
-        check("latitude", report.position.map(|place| place.latitude_deg()), |x| x);
-        check("longitude", report.position.map(|place| place.longitude_deg()), |x| x);
+        check("latitude", report.position.map(crate::sphere::Position::latitude_deg), |x| x);
+        check("longitude", report.position.map(crate::sphere::Position::longitude_deg), |x| x);
         check("heightOfStation", report.station_height_m, |x| x);
     }
 }
@@ -296,7 +296,7 @@ fn an_hour_of_the_whole_world() {
 fn a_framed_file_of_many_subsets() {
     let bytes = data("dwd_20210516_synop.bufr.gz");
     let truth = rows("dwd_20210516.csv.gz");
-    let found = messages(&bytes, &context("2021-05-16T12:10Z"));
+    let found = messages(&bytes, context("2021-05-16T12:10Z"));
     assert_eq!(found.len(), 44);
     let reports: Vec<_> = found.iter().flat_map(|(_, reading)| &reading.reports).collect();
     assert_eq!((reports.len(), truth.len()), (1031, 1031));
