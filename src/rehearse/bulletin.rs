@@ -88,7 +88,10 @@ impl Bulletin {
             }
             text.push_str(end);
         }
-        text.push_str(if matches!(wrapping, Wrapping::Enveloped(_)) { "\u{3}" } else { end });
+        if matches!(wrapping, Wrapping::Enveloped(_)) {
+            text.push('\u{3}');
+        }
+        text.push_str(end);
         text
     }
 }
@@ -115,7 +118,7 @@ mod tests {
         };
         assert_eq!(
             bulletin.text(Wrapping::Enveloped(7)),
-            "\u{1}\r\r\n007\r\r\nSMUK01 QGKN 151200 RRA\r\r\nAAXX 15124\r\r\n03772 NIL=\r\r\n\u{3}"
+            "\u{1}\r\r\n007\r\r\nSMUK01 QGKN 151200 RRA\r\r\nAAXX 15124\r\r\n03772 NIL=\r\r\n\u{3}\r\r\n"
         );
         assert_eq!(
             bulletin.file_name(time.plus_s(300)),

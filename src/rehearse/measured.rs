@@ -6,9 +6,7 @@ use super::reduction::{altimeter_hpa, sea_level_ratio};
 use super::station::{Place, Station, Voice};
 use super::weather::{Sky, Surface, Weather};
 use crate::instant::Instant;
-use crate::quantity::{
-    kt_from_m_s, whole_nearest, wind_from_components,
-};
+use crate::quantity::{kt_from_m_s, whole_nearest, wind_from_components};
 use crate::sphere::Position;
 
 /// Standard deviations of the errors of a kind of station.

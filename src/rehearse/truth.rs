@@ -13,6 +13,8 @@ use crate::sphere::Position;
 /// Half-width, in steps, and step of the lattice on which depths are measured, km.
 const LATTICE_HALF: i64 = 40;
 const LATTICE_STEP_KM: f64 = 50.0;
+/// Least depth of a centre, hPa: below it a dent is an open wave.
+const DEPTH_MIN_HPA: f64 = 0.5;
 
 /// What was true in a rehearsal.
 #[derive(Clone, PartialEq, Debug, Serialize, Deserialize)]
@@ -40,8 +42,8 @@ pub struct TrueSystem {
     pub name: String,
     /// `high` or `low`.
     pub kind: String,
-    /// Each whole hour at which the whole field has its centre; hours at which it has none (an
-    /// open wave) are left out.
+    /// Each whole hour at which the whole field has its centre at least 0.5 hPa deep; hours at
+    /// which it has none (an open wave) are left out.
     pub points: Vec<TruePoint>,
 }
 
@@ -104,13 +106,17 @@ pub(super) fn systems(weather: &Weather, start: Instant, hours: i64) -> Vec<True
             {
                 continue;
             }
+            let depth_hpa = depth_hpa(&sky, centre, low);
+            if depth_hpa < DEPTH_MIN_HPA {
+                continue;
+            }
             taken.push(centre);
             system.points.push(TruePoint {
                 time: time.hour_floor(),
                 latitude_deg: rounded(centre.latitude_deg(), 1e4),
                 longitude_deg: rounded(centre.longitude_deg(), 1e4),
                 pressure_hpa: rounded(sky.pressure_hpa(centre), 1e3),
-                depth_hpa: rounded(depth_hpa(&sky, centre, low), 10.0),
+                depth_hpa: rounded(depth_hpa, 10.0),
             });
         }
     }

@@ -1,2 +1,3 @@
 //! The suite: one binary, so that it is linked once and runs in parallel.
 mod house;
+mod rehearse_samples;

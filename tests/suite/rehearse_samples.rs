@@ -17,7 +17,7 @@ fn rehearsal(name: &str) -> Rehearsal {
 
 /// Compressors may differ from version to version; the text may not.
 fn expanded(name: &str, bytes: &[u8]) -> Vec<u8> {
-    if !name.ends_with(".gz") {
+    if PathBuf::from(name).extension().is_none_or(|ending| ending != "gz") {
         return bytes.to_vec();
     }
     let mut text = Vec::new();
