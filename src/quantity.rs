@@ -41,6 +41,16 @@ pub fn kt_from_m_s(speed_m_s: f64) -> f64 {
     speed_m_s * 3600.0 / NAUTICAL_MILE_M
 }
 
+/// Metres a second from kilometres an hour.
+pub fn m_s_from_km_h(speed_km_h: f64) -> f64 {
+    speed_km_h / 3.6
+}
+
+/// Metres from feet.
+pub fn m_from_feet(height_ft: f64) -> f64 {
+    height_ft * 0.3048
+}
+
 /// Nautical miles from kilometres.
 pub fn nm_from_km(distance_km: f64) -> f64 {
     distance_km * 1000.0 / NAUTICAL_MILE_M
@@ -82,6 +92,10 @@ pub fn wrap_360_deg(angle_deg: f64) -> f64 {
 
 /// An angle brought into (-180, 180].
 pub fn wrap_180_deg(angle_deg: f64) -> f64 {
+    // An angle that needs no turning keeps every digit it was coded with.
+    if angle_deg > -180.0 && angle_deg <= 180.0 {
+        return angle_deg;
+    }
     let wrapped = wrap_360_deg(angle_deg);
     if wrapped > 180.0 { wrapped - 360.0 } else { wrapped }
 }
