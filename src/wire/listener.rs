@@ -7,6 +7,7 @@
 use std::ops::Range;
 
 use crate::report::{Form, Identifier, Report};
+use crate::wire::bufr::MessageReading;
 use crate::wire::group::Group;
 
 /// What became of a stretch of text that should be a report.
@@ -32,20 +33,15 @@ pub(crate) trait Listener {
     /// A group and what it means.
     fn part(&mut self, group: Group<'_>, words: impl FnOnce() -> String);
 
-    /// An element that has no text of its own (BUFR): its name and what it means.
-    #[expect(dead_code, reason = "the place where the BUFR decoder plugs in")]
-    fn element(
-        &mut self,
-        bytes: Range<usize>,
-        name: impl FnOnce() -> String,
-        words: impl FnOnce() -> String,
-    );
-
     /// A group that breaks a rule.
     fn complain(&mut self, group: Group<'_>, rule: &str, message: impl FnOnce() -> String);
 
     /// The report is over.
     fn end(&mut self, bytes: Range<usize>, outcome: &Outcome);
+
+    /// A whole FM 94 message: its bytes, its place in the file, and what was read from it. It is
+    /// a stretch of its own, outside [`Listener::begin`] and [`Listener::end`].
+    fn message(&mut self, bytes: &[u8], start: usize, reading: MessageReading);
 
     /// A stretch between reports: envelopes, headings, separators.
     fn envelope(&mut self, bytes: Range<usize>);

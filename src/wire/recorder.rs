@@ -4,6 +4,7 @@ use std::ops::Range;
 
 use crate::limits::COMPLAINTS_PER_FILE_MAX;
 use crate::report::{Form, Identifier};
+use crate::wire::bufr::MessageReading;
 use crate::wire::complaint::{Complaint, printable};
 use crate::wire::group::Group;
 use crate::wire::listener::{Listener, Outcome};
@@ -27,6 +28,14 @@ impl Recorder {
         self.reading
     }
 
+    fn keep(&mut self, complaint: Complaint) {
+        if self.reading.complaints.len() < COMPLAINTS_PER_FILE_MAX {
+            self.reading.complaints.push(complaint);
+        } else {
+            self.reading.complaints_not_kept += 1;
+        }
+    }
+
     fn spend(&mut self, bytes: &Range<usize>) -> u64 {
         let length = u64::try_from(bytes.len()).unwrap_or(u64::MAX);
         self.reading.bytes.total += length;
@@ -45,9 +54,6 @@ impl Listener for Recorder {
     }
 
     fn part(&mut self, _: Group<'_>, _: impl FnOnce() -> String) {}
-
-    fn element(&mut self, _: Range<usize>, _: impl FnOnce() -> String, _: impl FnOnce() -> String) {
-    }
 
     fn complain(&mut self, group: Group<'_>, rule: &str, message: impl FnOnce() -> String) {
         if self.reading.complaints.len() >= COMPLAINTS_PER_FILE_MAX {
@@ -74,6 +80,23 @@ impl Listener for Recorder {
             }
             Outcome::Lost => self.reading.bytes.refused += length,
         }
+    }
+
+    fn message(&mut self, bytes: &[u8], start: usize, reading: MessageReading) {
+        let range = start..start + bytes.len();
+        let length = self.spend(&range);
+        if reading.understood {
+            self.reading.bytes.reports += length;
+        } else {
+            self.reading.bytes.refused += length;
+        }
+        self.reading.reports.extend(
+            reading.reports.iter().map(|report| Decoded { report: *report, bytes: range.clone() }),
+        );
+        for complaint in reading.complaints {
+            self.keep(complaint);
+        }
+        self.first = self.reading.complaints.len();
     }
 
     fn envelope(&mut self, bytes: Range<usize>) {

@@ -15,7 +15,7 @@ use crate::wire::heading::{self, Heading};
 use crate::wire::listener::{Listener, Outcome};
 use crate::wire::table::{self, Tables};
 use crate::wire::wind_unit::WindUnit;
-use crate::wire::{binary, buoy, metar, synop};
+use crate::wire::{Context, binary, bufr, buoy, metar, synop};
 
 mod mark;
 mod report_end;
@@ -58,6 +58,7 @@ pub(crate) struct Walk<'a, 'l, L> {
     sticky: Sticky,
     tables: Tables,
     ends: Ends,
+    bufr: bufr::Decoder,
 }
 
 impl<'a, 'l, L: Listener> Walk<'a, 'l, L> {
@@ -72,6 +73,7 @@ impl<'a, 'l, L: Listener> Walk<'a, 'l, L> {
             sticky: Sticky::Nothing,
             tables: Tables::default(),
             ends: Ends::default(),
+            bufr: bufr::Decoder::new(),
         }
     }
 
@@ -346,8 +348,10 @@ impl<'a, 'l, L: Listener> Walk<'a, 'l, L> {
     /// A binary message: the magic stands at the cursor.
     fn binary(&mut self) {
         let start = self.at;
-        let length = binary::read_message(self.bytes, start, &self.calendar, self.listener);
-        self.at = (start + length.max(4)).min(self.bytes.len());
+        let context = Context { received: self.calendar.received() };
+        let length =
+            binary::read_message(&mut self.bufr, self.bytes, start, context, self.listener);
+        self.at = (start + length).min(self.bytes.len());
     }
 }
 
