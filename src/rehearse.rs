@@ -58,7 +58,8 @@ impl Rehearsal {
         let start = start.hour_floor().instant();
         let weather = weather::Weather::new(&scenario, start);
         let dice = dice::Dice::new(scenario.seed).word("instruments");
-        let eye = measured::Eye { weather: &weather, start, dice };
+        let error_factor = scenario.instrument_error_factor;
+        let eye = measured::Eye { weather: &weather, start, dice, error_factor };
         let plan = delivery::plan(&scenario, &station::stations(&scenario), &eye);
         Self { scenario, start, weather, plan }
     }

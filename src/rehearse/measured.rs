@@ -70,6 +70,8 @@ pub(crate) struct Eye<'a> {
     pub(crate) weather: &'a Weather,
     pub(crate) start: Instant,
     pub(crate) dice: Dice,
+    /// Size of the errors: 1 as in reality.
+    pub(crate) error_factor: f64,
 }
 
 impl Eye<'_> {
@@ -86,9 +88,10 @@ impl Eye<'_> {
         let blend = (share * share + (1.0 - share) * (1.0 - share)).sqrt();
         let slow = (slow(block) * (1.0 - share) + slow(block + 1) * share) / blend;
         let error = station.chronic.bias_hpa
-            + errors.fixed_hpa * dice.word("fixed").normal()
-            + errors.slow_hpa * slow
-            + errors.reading_hpa * dice.word("reading").number(time.unix_s()).normal();
+            + self.error_factor
+                * (errors.fixed_hpa * dice.word("fixed").normal()
+                    + errors.slow_hpa * slow
+                    + errors.reading_hpa * dice.word("reading").number(time.unix_s()).normal());
         let sky = self.weather.at(time);
         let position = station.position(time.hours_since(self.start));
         let (air_c, dew_c) = sky.air_and_dew_point_c(position, station.height_m, station.surface());
@@ -114,14 +117,14 @@ impl Eye<'_> {
         let trace = [tenths(3), tenths(2), tenths(1), tenths(0)];
 
         let (u, v) = sky.wind_m_s(position, surface);
-        let u = u + errors.wind_m_s * dice.word("u").normal();
-        let v = v + errors.wind_m_s * dice.word("v").normal();
+        let u = u + self.error_factor * errors.wind_m_s * dice.word("u").normal();
+        let v = v + self.error_factor * errors.wind_m_s * dice.word("v").normal();
         let (wind_from_deg, wind_m_s) = wind_from_components(u, v);
         let gust_m_s = wind_m_s * dice.word("gust").between(1.3, 1.55);
 
         let (air_c, dew_c) = sky.air_and_dew_point_c(position, station.height_m, surface);
-        let air_c = air_c + 0.3 * dice.word("air").normal();
-        let dew_point_c = (dew_c + 0.4 * dice.word("dew").normal()).min(air_c);
+        let air_c = air_c + self.error_factor * 0.3 * dice.word("air").normal();
+        let dew_point_c = (dew_c + self.error_factor * 0.4 * dice.word("dew").normal()).min(air_c);
 
         let before = station.position(hour - 3.0);
         let (run_km, course_deg) = before.rhumb_to(position);
@@ -141,7 +144,8 @@ impl Eye<'_> {
             gust_m_s: (wind_m_s >= 7.5 && gust_m_s >= 12.9).then_some(gust_m_s),
             air_c,
             dew_point_c,
-            sea_c: sky.sea_temperature_c(position) + 0.2 * dice.word("sea").normal(),
+            sea_c: sky.sea_temperature_c(position)
+                + self.error_factor * 0.2 * dice.word("sea").normal(),
             made_good: if moves { (course_deg, speed_kt) } else { (0.0, 0.0) },
         }
     }

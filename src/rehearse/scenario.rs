@@ -53,6 +53,9 @@ pub struct Scenario {
     /// Whether the half-daily tide of the atmosphere is part of the pressure.
     #[serde(default)]
     pub tide: bool,
+    /// Size of the errors of the instruments: 1 as in reality, 0 for perfect ones.
+    #[serde(default = "as_in_reality")]
+    pub instrument_error_factor: f64,
     /// The pressure without the systems.
     pub background: Background,
     /// Temperatures.
@@ -333,6 +336,10 @@ pub struct FaultPlan {
 
 const fn one() -> i64 {
     1
+}
+
+const fn as_in_reality() -> f64 {
+    1.0
 }
 
 const fn half_hour() -> i64 {

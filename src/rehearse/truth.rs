@@ -1,4 +1,7 @@
 //! What was true: every high and low, hour by hour, and every fault that was planted.
+//!
+//! The centres of the whole field count, not those of the plan: a planned low may be an open wave,
+//! and highs arise between lows without having been planned. Both are found on the exact field.
 
 use std::cmp::Reverse;
 use std::collections::{BTreeSet, BinaryHeap};
@@ -6,6 +9,8 @@ use std::collections::{BTreeSet, BinaryHeap};
 use serde::{Deserialize, Serialize};
 
 use super::weather::{Sky, Weather};
+
+mod unplanned;
 use crate::instant::{Hour, Instant};
 use crate::quantity::whole_nearest;
 use crate::sphere::Position;
@@ -29,7 +34,7 @@ pub struct Truth {
     pub start: Instant,
     /// Last hour.
     pub end: Instant,
-    /// Highs and lows, in the order of the scenario.
+    /// Highs and lows: the planned ones in the order of the scenario, then those that arose.
     pub systems: Vec<TrueSystem>,
     /// Faults planted in the feed, by time and station.
     pub faults: Vec<PlantedFault>,
@@ -38,7 +43,7 @@ pub struct Truth {
 /// One high or low.
 #[derive(Clone, PartialEq, Debug, Serialize, Deserialize)]
 pub struct TrueSystem {
-    /// The scenario's name for it.
+    /// The scenario's name for it, or `unplanned 1` and so on.
     pub name: String,
     /// `high` or `low`.
     pub kind: String,
@@ -91,6 +96,7 @@ pub(super) fn systems(weather: &Weather, start: Instant, hours: i64) -> Vec<True
             points: Vec::new(),
         })
         .collect();
+    let mut unplanned = Vec::new();
     for hour in 0..=hours {
         let time = start.plus_s(hour * 3600);
         let sky = weather.at(time);
@@ -111,16 +117,22 @@ pub(super) fn systems(weather: &Weather, start: Instant, hours: i64) -> Vec<True
                 continue;
             }
             taken.push(centre);
-            system.points.push(TruePoint {
-                time: time.hour_floor(),
-                latitude_deg: rounded(centre.latitude_deg(), 1e4),
-                longitude_deg: rounded(centre.longitude_deg(), 1e4),
-                pressure_hpa: rounded(sky.pressure_hpa(centre), 1e3),
-                depth_hpa: rounded(depth_hpa, 10.0),
-            });
+            system.points.push(point(&sky, time, centre, depth_hpa));
         }
+        unplanned::add(&sky, time, &taken, &mut unplanned);
     }
+    systems.extend(unplanned);
     systems
+}
+
+fn point(sky: &Sky<'_>, time: Instant, centre: Position, depth_hpa: f64) -> TruePoint {
+    TruePoint {
+        time: time.hour_floor(),
+        latitude_deg: rounded(centre.latitude_deg(), 1e4),
+        longitude_deg: rounded(centre.longitude_deg(), 1e4),
+        pressure_hpa: rounded(sky.pressure_hpa(centre), 1e3),
+        depth_hpa: rounded(depth_hpa, 10.0),
+    }
 }
 
 fn rounded(value: f64, parts: f64) -> f64 {

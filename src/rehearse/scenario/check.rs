@@ -8,6 +8,7 @@ pub(super) fn check(scenario: &Scenario) -> Result<(), ScenarioError> {
     ask(s.start.unix_s().rem_euclid(3600) == 0, "start", "a whole hour", s.start)?;
     ask((1..=240).contains(&s.hours), "hours", "1 to 240", s.hours)?;
     letters("centre", &s.centre, 4)?;
+    range("instrument_error_factor", s.instrument_error_factor, 0.0, 10.0)?;
     let b = &s.background;
     range("background.equatorward_hpa", b.equatorward_hpa, 950.0, 1050.0)?;
     range("background.poleward_hpa", b.poleward_hpa, 950.0, 1050.0)?;
