@@ -33,8 +33,10 @@ pub(super) enum Wrapping {
     Plain,
     /// Lines end in CR CR LF; nothing around it.
     Teleprinter,
-    /// SOH, a sequence number, CR CR LF, and ETX at the end.
+    /// SOH, a sequence number, CR CR LF, and ETX at the end (International Alphabet No. 5).
     Enveloped(u32),
+    /// ZCZC and a sequence number, and NNNN at the end (International Alphabet No. 2).
+    Signals(u32),
 }
 
 impl Bulletin {
@@ -70,6 +72,9 @@ impl Bulletin {
             // Writing to a string cannot fail.
             let _ = write!(text, "\u{1}{end}{:03}{end}", number % 1000);
         }
+        if let Wrapping::Signals(number) = wrapping {
+            let _ = write!(text, "ZCZC {:03}{end}", number % 1000);
+        }
         text.push_str(&self.heading_line());
         text.push_str(end);
         for report in self.opening.iter().chain(&self.reports) {
@@ -88,8 +93,10 @@ impl Bulletin {
             }
             text.push_str(end);
         }
-        if matches!(wrapping, Wrapping::Enveloped(_)) {
-            text.push('\u{3}');
+        match wrapping {
+            Wrapping::Enveloped(_) => text.push('\u{3}'),
+            Wrapping::Signals(_) => text.push_str("\n\n\nNNNN"),
+            Wrapping::Plain | Wrapping::Teleprinter => {}
         }
         text.push_str(end);
         text

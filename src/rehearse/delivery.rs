@@ -99,6 +99,13 @@ impl Planner<'_> {
         let faults = &self.scenario.faults;
         let dice = self.dice.word(&station.id).number(time.unix_s());
         if dice.word("missing").happens(faults.missing_percent) {
+            if matches!(station.voice, Voice::Synop { .. }) && dice.word("nil").happens(50.0) {
+                let transit_min = transit_minutes(station, time, self.dice);
+                let text = format!("{} NIL=", station.id);
+                self.send(station, time, transit_min, Sending::First, text);
+            } else {
+                self.plant(station, time, "missing");
+            }
             return;
         }
         let m = eye.measure(station, time);
@@ -134,7 +141,7 @@ impl Planner<'_> {
         } else {
             (on_time_min, Sending::First)
         };
-        self.send(station, &m, transit_min, sending, text.clone());
+        self.send(station, time, transit_min, sending, text.clone());
         if corrected {
             let after_min = dice.word("after").between(40.0, 110.0);
             self.plant(
@@ -143,11 +150,11 @@ impl Planner<'_> {
                 &format!("pressure 10 hPa too high, corrected after {after_min:.0} minutes"),
             );
             let text = write(station, &m, Slip::None, true);
-            self.send(station, &m, transit_min + after_min, Sending::Corrected, text);
+            self.send(station, time, transit_min + after_min, Sending::Corrected, text);
         } else if dice.word("again").happens(faults.repeated_percent) {
             let after_min = dice.word("after").between(5.0, 90.0);
             self.plant(station, time, &format!("sent again after {after_min:.0} minutes"));
-            self.send(station, &m, transit_min + after_min, Sending::Again, text);
+            self.send(station, time, transit_min + after_min, Sending::Again, text);
         }
     }
 
@@ -160,18 +167,18 @@ impl Planner<'_> {
     fn send(
         &mut self,
         station: &Station,
-        m: &Measured,
+        time: Instant,
         transit_min: f64,
         sending: Sending,
         text: String,
     ) {
         let period_s = 60 * self.scenario.feed.collect_minutes;
-        let sent = m.time.plus_s(crate::quantity::whole_nearest(60.0 * transit_min));
+        let sent = time.plus_s(crate::quantity::whole_nearest(60.0 * transit_min));
         let due = Instant::from_unix_s((sent.unix_s().div_euclid(period_s) + 1) * period_s);
         if due > self.last {
             return;
         }
-        self.plan.reports += 1;
+        self.plan.reports += usize::from(!text.ends_with("NIL="));
         if let Voice::Table { form, word, .. } = &station.voice {
             self.plan.tables.entry((due, *form, word.clone())).or_default().push(text);
             return;
@@ -179,11 +186,11 @@ impl Planner<'_> {
         let again = sending == Sending::Again;
         let gathering = Gathering {
             due,
-            heading: heading(station, m.time, again),
-            time: standard_time(station, m.time),
+            heading: heading(station, time, again),
+            time: standard_time(station, time),
             sending,
             opening: match &station.voice {
-                Voice::Synop { wind, .. } => Some(synop::opening(m.time, *wind)),
+                Voice::Synop { wind, .. } => Some(synop::opening(time, *wind)),
                 _ => None,
             },
         };
@@ -289,7 +296,11 @@ impl Plan {
             };
             let dice = dice.word("wrapping").number(i64::from(number));
             let wrapping = if dice.word("envelope").happens(scenario.feed.envelope_percent) {
-                Wrapping::Enveloped(number)
+                if dice.word("alphabet").happens(20.0) {
+                    Wrapping::Signals(number)
+                } else {
+                    Wrapping::Enveloped(number)
+                }
             } else if dice.word("lines").happens(50.0) {
                 Wrapping::Teleprinter
             } else {
