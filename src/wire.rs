@@ -18,6 +18,7 @@ pub mod bufr;
 mod buoy;
 mod calendar;
 pub mod complaint;
+mod explain;
 mod group;
 mod gzip;
 mod heading;
@@ -30,6 +31,7 @@ mod walk;
 mod wind_unit;
 
 pub use complaint::Complaint;
+pub use explain::{Explained, ExplainedKind, Part};
 pub use table::column::Column;
 
 use gzip::Fault;
@@ -89,8 +91,18 @@ pub fn read(bytes: &[u8], context: &Context) -> Reading {
     recorder.finish()
 }
 
+/// Takes a file apart for a reader: hands on, in file order, each report group by group and each
+/// heading, with what they mean and what is wrong with them.
+///
+/// It understands exactly what [`read`] does: both hear the same decoders.
+pub fn explain(bytes: &[u8], context: &Context, each: &mut dyn FnMut(Explained)) {
+    let mut explainer = explain::Explainer::new(each);
+    let length = listen(bytes, *context, &mut explainer);
+    explainer.finish(length);
+}
+
 /// Tells a listener everything that a file holds.
-fn listen<L: listener::Listener>(bytes: &[u8], context: Context, listener: &mut L) {
+fn listen<L: listener::Listener>(bytes: &[u8], context: Context, listener: &mut L) -> usize {
     let expanded = gzip::expand(bytes);
     Walk::new(&expanded.bytes, context.received, listener).run();
     if let Some(fault) = expanded.fault {
@@ -105,6 +117,7 @@ fn listen<L: listener::Listener>(bytes: &[u8], context: Context, listener: &mut 
             }),
         }
     }
+    expanded.bytes.len()
 }
 
 #[cfg(test)]

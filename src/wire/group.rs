@@ -101,15 +101,6 @@ impl<'a> Groups<'a> {
     pub(crate) fn peek(&self) -> Option<Group<'a>> {
         self.clone().next()
     }
-
-    /// What is left of the stretch as one group, trimmed of blanks; for text that is not groups.
-    pub(crate) fn rest(&self) -> Group<'a> {
-        let text = self.file.get(self.at..self.end).unwrap_or_default();
-        let lead = text.iter().take_while(|&&byte| is_blank(byte)).count();
-        let text = text.get(lead..).unwrap_or_default();
-        let tail = text.iter().rev().take_while(|&&byte| is_blank(byte)).count();
-        Group { text: text.get(..text.len() - tail).unwrap_or_default(), start: self.at + lead }
-    }
 }
 
 impl<'a> Iterator for Groups<'a> {

@@ -16,6 +16,18 @@ pub(crate) struct Heading {
     pub length: usize,
 }
 
+impl Heading {
+    /// What it says, in words.
+    pub(crate) fn words(&self) -> String {
+        let (day, hour, minute) = self.day_hour_minute;
+        let revision = match self.revision {
+            Revision::Original => String::new(),
+            Revision::Correction(number) => format!(", correction {number}"),
+        };
+        format!("heading, day {day:02} at {hour:02}:{minute:02} UTC{revision}")
+    }
+}
+
 /// Longest heading line, bytes; real ones have at most 22 and a few blanks.
 pub(crate) const HEADING_BYTES_MAX: usize = 64;
 

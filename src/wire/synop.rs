@@ -13,7 +13,7 @@ use crate::wire::wind_unit::WindUnit;
 pub(crate) mod element;
 pub(crate) mod identification;
 pub(crate) mod pressure;
-mod section_1;
+pub(crate) mod section_1;
 mod section_2;
 mod section_3;
 

@@ -194,7 +194,11 @@ impl<'a, 'l, L: Listener> Walk<'a, 'l, L> {
             [b'N', _] => Sticky::NotRead("a notice"),
             _ => Sticky::Nothing,
         };
-        self.envelope(self.at + heading.length);
+        let length = heading.length;
+        let line = stretch(self.bytes, self.at..self.at + length);
+        self.listener.begin(None);
+        self.listener.part(line, || heading.words());
+        self.envelope(self.at + length);
         self.heading = Some(heading);
     }
 

@@ -4,3 +4,4 @@ mod rehearse_command;
 mod rehearse_read;
 mod rehearse_samples;
 mod rehearse_truth;
+mod wire_samples;
