@@ -1,12 +1,47 @@
 //! Reports placed, timed, reduced to mean sea level, checked, and held.
 
+use std::collections::BTreeMap;
+
 use serde::{Deserialize, Serialize};
 
 use crate::instant::{Hour, Instant};
 use crate::report::{Identifier, Platform, Report};
 use crate::sphere::Position;
 
+pub mod catalogue;
+pub mod check;
+pub mod error;
 pub mod held;
+mod judge;
+pub mod observe;
+pub mod reduction;
+pub mod series;
+pub mod wind;
+
+pub use catalogue::Catalogue;
+pub use held::Held;
+pub use observe::{HourObserved, Observed, Observer, observe, observe_hour};
+
+/// What can be set about the making of observations.
+#[derive(Clone, PartialEq, Debug)]
+pub struct ObsSettings {
+    /// Barometers above this height, m, do not enter the sea-level analysis (RED-3).
+    pub station_height_max_m: f64,
+    /// The watchkeeper's verdicts, by [`decision_key`].
+    pub overruled: BTreeMap<String, Verdict>,
+}
+
+impl Default for ObsSettings {
+    fn default() -> Self {
+        Self { station_height_max_m: 1000.0, overruled: BTreeMap::new() }
+    }
+}
+
+/// What a decision about a report is kept under: platform, station and time, e.g.
+/// `ship ABCD 2026-01-15T12:00:00Z`.
+pub fn decision_key(report: &Report) -> String {
+    format!("{} {} {}", report.platform.word(), report.station, report.time)
+}
 
 /// Where a held report came from.
 #[derive(Clone, PartialEq, Eq, PartialOrd, Ord, Debug, Serialize, Deserialize)]
