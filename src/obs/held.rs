@@ -185,10 +185,8 @@ impl Held {
                 let entry = slot.get_mut();
                 let before = (entry.counts(), entry.fingerprint(&key));
                 let joined = entry.join(copy);
-                bucket.fingerprint = bucket
-                    .fingerprint
-                    .wrapping_sub(before.1)
-                    .wrapping_add(entry.fingerprint(&key));
+                bucket.fingerprint =
+                    bucket.fingerprint.wrapping_sub(before.1).wrapping_add(entry.fingerprint(&key));
                 (joined, before.0, entry.counts())
             }
         };

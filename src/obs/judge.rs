@@ -62,7 +62,9 @@ pub(super) fn judge(
             Element::Pressure,
             Verdict::Sound,
             "RED-3 height",
-            format!("barometer at {height_m:.0} m: above {limit_m:.0} m not in the sea-level analysis"),
+            format!(
+                "barometer at {height_m:.0} m: above {limit_m:.0} m not in the sea-level analysis"
+            ),
         );
     }
     let ten_metres = wind::at_ten_metres(report);
@@ -121,11 +123,7 @@ fn components(report: &Report, speed_m_s: f64) -> Option<(f64, f64)> {
 
 /// Sea-level pressure of a report: as reported, else reduced from the station pressure, else from
 /// the altimeter setting (COD-10), else from a standard surface.
-fn sea_level(
-    case: &Case<'_>,
-    within: gross::Within,
-    findings: &mut Findings,
-) -> Option<SeaLevel> {
+fn sea_level(case: &Case<'_>, within: gross::Within, findings: &mut Findings) -> Option<SeaLevel> {
     let (report, site) = (case.report, case.site);
     let forgotten = internal::height_forgotten(case, findings);
     let (height_m, height_error_m) = barometer(case);
@@ -147,10 +145,8 @@ fn sea_level(
         }
         _ => 0.0,
     };
-    let from_station = report
-        .pressure_station_hpa
-        .filter(|_| within.pressure_station)
-        .and_then(reduced);
+    let from_station =
+        report.pressure_station_hpa.filter(|_| within.pressure_station).and_then(reduced);
     if let Some(pressure_hpa) = report.pressure_msl_hpa.filter(|_| within.pressure_msl) {
         if let Some(own) = from_station
             && !forgotten
@@ -178,9 +174,7 @@ fn sea_level(
         .altimeter_hpa
         .filter(|_| within.altimeter)
         .zip(height_m)
-        .map(|(setting_hpa, height_m)| {
-            reduction::station_from_altimeter_hpa(setting_hpa, height_m)
-        })
+        .map(|(setting_hpa, height_m)| reduction::station_from_altimeter_hpa(setting_hpa, height_m))
         .and_then(reduced);
     if let Some(pressure_hpa) = from_altimeter {
         return Some(found(pressure_hpa, PressureSource::FromAltimeter));

@@ -184,9 +184,8 @@ impl<'a> Maker<'a> {
             }
             self.station(*who, &group, &points, &mut fresh);
         }
-        let of = |observation: &Observation| {
-            (observation.report.platform, observation.report.station)
-        };
+        let of =
+            |observation: &Observation| (observation.report.platform, observation.report.station);
         let kept = old.observations.iter().filter(|held| !touched.contains(&of(held)));
         let mut observations: Vec<_> = kept.cloned().collect();
         observations.append(&mut fresh.observations);
@@ -361,9 +360,8 @@ fn changed_stations(old: &Held, new: &Held) -> BTreeMap<Hour, BTreeSet<Who>> {
 
 /// Stations that the reports place otherwise than before.
 fn moved_stations(old: &Held, new: &Held) -> BTreeSet<Who> {
-    let place = |held: &Held, who: &Who| {
-        held.places().get(who).and_then(Places::most_given).copied()
-    };
+    let place =
+        |held: &Held, who: &Who| held.places().get(who).and_then(Places::most_given).copied();
     let names: BTreeSet<&Who> = old.places().keys().chain(new.places().keys()).collect();
     names.into_iter().filter(|who| place(old, who) != place(new, who)).copied().collect()
 }

@@ -1,5 +1,6 @@
 //! The suite: one binary, so that it is linked once and runs in parallel.
 mod house;
+mod reduction;
 mod rehearse_command;
 mod rehearse_read;
 mod rehearse_samples;

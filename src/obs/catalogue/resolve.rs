@@ -49,8 +49,7 @@ pub fn resolve(catalogue: &Catalogue, places: Option<&Places>, report: &Report) 
     let user_position = user.and_then(|row| row.position).map(|at| (at, Source::User));
     let own_position = report.position.map(|at| (at, Source::Report));
     let learnt_position = learnt.map(|place| (place.position, Source::Learnt));
-    let standard_position =
-        standard.and_then(|row| row.position).map(|at| (at, Source::BuiltIn));
+    let standard_position = standard.and_then(|row| row.position).map(|at| (at, Source::BuiltIn));
     let (position, position_source) =
         user_position.or(own_position).or(learnt_position).or(standard_position)?;
     let barometers = [
@@ -114,9 +113,8 @@ pub fn conflict(
         parts.push(format!("ground at {own:.0} m by its reports, {other:.0} m by the catalogue"));
     }
     if let Some((own, other)) = barometer {
-        parts.push(format!(
-            "barometer at {own:.0} m by its reports, {other:.0} m by the catalogue"
-        ));
+        parts
+            .push(format!("barometer at {own:.0} m by its reports, {other:.0} m by the catalogue"));
     }
     if parts.is_empty() {
         return None;

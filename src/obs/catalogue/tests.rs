@@ -1,7 +1,7 @@
 use super::*;
 use crate::instant::Instant;
-use crate::obs::held::Held;
 use crate::obs::Provenance;
+use crate::obs::held::Held;
 use crate::report::{Form, Report};
 
 fn name(text: &str) -> Identifier {
@@ -89,7 +89,11 @@ fn reports_that_carry_their_place_teach_it_and_conflicts_are_listed() {
     let learnt = places("03772").and_then(Places::most_given).expect("learnt");
     let found = resolve::conflict(&catalogue, Platform::Land, name("03772"), learnt);
     let found = found.expect("a degree of latitude apart");
-    assert!(found.text.contains("114 km apart") || found.text.contains("113 km apart"), "{}", found.text);
+    assert!(
+        found.text.contains("114 km apart") || found.text.contains("113 km apart"),
+        "{}",
+        found.text
+    );
     held.forget_before(time.hour_floor().plus(1));
     assert!(held.places().is_empty());
 }

@@ -85,8 +85,7 @@ fn pressures(case: &Case<'_>, within: Within, findings: &mut Findings) {
         report.altimeter_hpa.is_some() && within.altimeter,
         report.standard_surface.is_some(),
     ];
-    let verdict =
-        if sound.contains(&true) { Verdict::Doubtful } else { Verdict::Refused };
+    let verdict = if sound.contains(&true) { Verdict::Doubtful } else { Verdict::Refused };
     let mut outside = |what: &str, value: Option<f64>, limits: &RangeInclusive<f64>, ok: bool| {
         if let Some(value) = value.filter(|_| !ok) {
             let (low, high) = (limits.start(), limits.end());
@@ -94,12 +93,7 @@ fn pressures(case: &Case<'_>, within: Within, findings: &mut Findings) {
             findings.add(Element::Pressure, verdict, CHECK, reason);
         }
     };
-    outside(
-        "sea-level pressure",
-        report.pressure_msl_hpa,
-        &PRESSURE_MSL_HPA,
-        within.pressure_msl,
-    );
+    outside("sea-level pressure", report.pressure_msl_hpa, &PRESSURE_MSL_HPA, within.pressure_msl);
     outside(
         "station pressure",
         report.pressure_station_hpa,

@@ -92,9 +92,8 @@ fn own_series(case: &Case<'_>, findings: &mut Findings) {
     let check = "QC-2 change against own series";
     let sign_slip = (own + change).abs() <= 0.3 && change.abs() > 0.5;
     let hint = if sign_slip { "; it would fit with the other sign" } else { "" };
-    let reason = format!(
-        "change {change:+.1} hPa in 3 h, but its own pressures differ by {own:+.1}{hint}"
-    );
+    let reason =
+        format!("change {change:+.1} hPa in 3 h, but its own pressures differ by {own:+.1}{hint}");
     findings.add(Element::Tendency, Verdict::Doubtful, check, reason.clone());
     if miss > CHANGE_WRONG_HPA && !sign_slip {
         findings.add(Element::Pressure, Verdict::Doubtful, check, reason);

@@ -268,7 +268,10 @@ impl Copy {
         };
         head(self).cmp(&head(other)).then_with(|| {
             let pairs = self.values.iter().zip(&other.values);
-            pairs.map(|(a, b)| a.total_cmp(b)).find(|order| order.is_ne()).unwrap_or(Ordering::Equal)
+            pairs
+                .map(|(a, b)| a.total_cmp(b))
+                .find(|order| order.is_ne())
+                .unwrap_or(Ordering::Equal)
         })
     }
 

@@ -38,10 +38,9 @@ impl Key {
             platform: report.platform,
             station: plain_index(report.station),
             time: Instant::from_unix_s(seconds - seconds.rem_euclid(60)),
-            cell: report
-                .position
-                .filter(|_| report.station.is_generic())
-                .map(|position| (tenths(position.latitude_deg()), tenths(position.longitude_deg()))),
+            cell: report.position.filter(|_| report.station.is_generic()).map(|position| {
+                (tenths(position.latitude_deg()), tenths(position.longitude_deg()))
+            }),
         }
     }
 
@@ -63,7 +62,8 @@ impl Key {
     }
 
     fn fingerprint(&self) -> u64 {
-        let mut mixed = mix(u64::from(self.platform as u8) ^ mix(self.time.unix_s().cast_unsigned()));
+        let mut mixed =
+            mix(u64::from(self.platform as u8) ^ mix(self.time.unix_s().cast_unsigned()));
         for byte in self.station.as_str().bytes() {
             mixed = mix(mixed ^ u64::from(byte));
         }
@@ -106,7 +106,8 @@ impl Entry {
 
     /// Whether the standing copy is the very same object as another entry's: nothing has changed.
     pub fn is_same(&self, other: &Self) -> bool {
-        let standing = |entry: &Self| Arc::as_ptr(entry.completed.as_ref().unwrap_or(&entry.highest));
+        let standing =
+            |entry: &Self| Arc::as_ptr(entry.completed.as_ref().unwrap_or(&entry.highest));
         std::ptr::eq(standing(self), standing(other))
     }
 
@@ -151,8 +152,7 @@ impl Entry {
             return;
         }
         let older = self.others.iter().find(|held| held.revision() < self.highest.revision());
-        self.completed =
-            older.and_then(|older| self.highest.completed_by(older)).map(Arc::new);
+        self.completed = older.and_then(|older| self.highest.completed_by(older)).map(Arc::new);
     }
 
     pub(super) fn counts(&self) -> HeldCounts {

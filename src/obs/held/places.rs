@@ -89,9 +89,10 @@ impl Places {
 
     /// The place that most copies give; of equal ones the first by value.
     pub fn most_given(&self) -> Option<&Place> {
-        let best = self.counted.iter().max_by(|(a, count), (b, other)| {
-            count.cmp(other).then_with(|| b.order(a))
-        });
+        let best = self
+            .counted
+            .iter()
+            .max_by(|(a, count), (b, other)| count.cmp(other).then_with(|| b.order(a)));
         best.map(|(place, _)| place)
     }
 

@@ -220,7 +220,8 @@ fn a_spike_a_jump_and_a_stuck_barometer_are_doubted() {
 #[test]
 fn a_ship_that_leaps_out_and_back_is_refused_there() {
     let hours = [start().plus(-1), start(), start().plus(1)];
-    let track = [ship(hours[0], 48.3, -15.6), ship(hours[1], 48.4, 15.4), ship(hours[2], 48.5, -15.2)];
+    let track =
+        [ship(hours[0], 48.3, -15.6), ship(hours[1], 48.4, 15.4), ship(hours[2], 48.5, -15.2)];
     let observation = first(&track, start());
     assert_eq!(observation.verdict(Element::Position), Verdict::Refused);
     assert_eq!((observation.pressure_msl_hpa, observation.wind_m_s), (None, None));

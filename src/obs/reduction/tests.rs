@@ -66,7 +66,11 @@ fn low_stations_and_ships() {
 /// METHODS CHK-051, CHK-052.
 #[test]
 fn the_temperature_of_the_reduction_and_what_a_kelvin_is_worth() {
-    near(to_sea_level_hpa(950.0, 500.0, reduction_temperature_c(25.0, None), 12.0), 1005.4310, 5e-4);
+    near(
+        to_sea_level_hpa(950.0, 500.0, reduction_temperature_c(25.0, None), 12.0),
+        1005.4310,
+        5e-4,
+    );
     let mean = reduction_temperature_c(25.0, Some(11.0));
     near(to_sea_level_hpa(950.0, 500.0, mean, 12.0), 1006.7885, 5e-4);
     for (pressure, height, expected) in [(955.0, 500.0, -0.212_12), (900.0, 1000.0, -0.419_36)] {
@@ -108,7 +112,8 @@ fn heights_of_standard_surfaces() {
 /// METHODS CHK-061, CHK-062 (WMO-No. 8; WGS84).
 #[test]
 fn gravity_and_geopotential() {
-    for (latitude, expected) in [(0.0, 9.780_33), (45.0, 9.806_20), (60.0, 9.819_18), (90.0, 9.832_19)]
+    for (latitude, expected) in
+        [(0.0, 9.780_33), (45.0, 9.806_20), (60.0, 9.819_18), (90.0, 9.832_19)]
     {
         near(normal_gravity_m_s2(latitude), expected, 1e-5);
     }
