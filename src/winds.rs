@@ -10,6 +10,14 @@ use crate::instant::{Hour, Instant};
 use crate::report::Platform;
 use crate::sphere::Position;
 
+pub mod balance;
+pub mod beaufort;
+pub mod convergence;
+pub mod fields;
+pub mod land;
+pub mod stations;
+pub mod surface_layer;
+
 /// A wind: where it blows from and how fast.
 #[derive(Clone, Copy, PartialEq, Debug, Serialize, Deserialize)]
 pub struct Wind {

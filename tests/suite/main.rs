@@ -1,4 +1,5 @@
 //! The suite: one binary, so that it is linked once and runs in parallel.
+mod checks;
 mod house;
 mod reduction;
 mod rehearse_command;
