@@ -27,11 +27,8 @@ fn feed(scenario: Scenario) -> Feed {
     Feed { rehearsal, reports, complaints }
 }
 
-/// Without its buoys for as long as FM 18 is not read.
 fn scenario(name: &str) -> Scenario {
-    let mut scenario = Scenario::built_in(name).expect("a built-in scenario");
-    scenario.buoys.clear();
-    scenario
+    Scenario::built_in(name).expect("a built-in scenario")
 }
 
 /// Perfect instruments, and nothing goes wrong.
@@ -71,7 +68,7 @@ fn a_perfect_feed_is_read_without_a_complaint_and_says_what_is_true() {
         assert_eq!(feed.reports.len(), feed.rehearsal.reports(), "{name}");
         let land = land_places(feed.rehearsal.scenario());
         let forms: BTreeSet<Form> = feed.reports.iter().map(|report| report.form).collect();
-        let all = [Form::Synop, Form::Ship, Form::Metar, Form::Csv, Form::Json];
+        let all = [Form::Synop, Form::Ship, Form::Metar, Form::Buoy, Form::Csv, Form::Json];
         assert_eq!(forms, BTreeSet::from(all), "{name}");
         let mut calm = 0;
         for report in &feed.reports {
@@ -104,8 +101,8 @@ fn a_perfect_feed_is_read_without_a_complaint_and_says_what_is_true() {
                 && found > 2.0
             {
                 let off = wrap_180_deg(found_deg - from_deg).abs();
-                let place_deg = if report.form == Form::Ship { 12.0 } else { 0.0 };
-                assert!(off <= 5.001 + place_deg, "{} {found_deg} {from_deg}", report.station);
+                let place_deg = if report.form == Form::Ship { 12.0 } else { 0.02 };
+                assert!(off <= 5.0 + place_deg, "{} {found_deg} {from_deg}", report.station);
             } else {
                 calm += 1;
             }
@@ -172,7 +169,7 @@ fn changes_are_those_of_the_truth_and_a_ships_has_its_motion_in_it() {
                 _ => {}
             }
         }
-        assert!(checked > 300 && ships > 100 && moved > 10, "{name} {checked} {ships} {moved}");
+        assert!(checked > 1000 && ships > 100 && moved > 10, "{name} {checked} {ships} {moved}");
     }
 }
 
