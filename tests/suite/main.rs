@@ -3,6 +3,7 @@ mod checks;
 mod house;
 mod reduction;
 mod rehearse_command;
+mod rehearse_observed;
 mod rehearse_read;
 mod rehearse_samples;
 mod rehearse_truth;
