@@ -5,6 +5,14 @@ use serde::{Deserialize, Serialize};
 use crate::instant::{Hour, Instant};
 use crate::sphere::Position;
 
+pub mod centre;
+pub mod follow;
+pub mod motion;
+pub mod names;
+pub mod outlook;
+pub mod rating;
+pub mod track;
+
 /// High or low.
 #[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug, Serialize, Deserialize)]
 #[serde(rename_all = "lowercase")]
@@ -139,7 +147,6 @@ pub struct System {
     pub reports_inside: usize,
 }
 
-/// When the track was last found in an analysis.
 impl System {
     /// The last hour in which it was found.
     pub fn last_found(&self) -> Option<Instant> {
