@@ -1,10 +1,22 @@
 //! Pressure tendency: as reported, as computed from the station's own series, in words.
+//!
+//! [`table`] makes the rows. Its parts: [`characteristic`] the code of a trace (TEN-1), [`motion`] what
+//! a ship's own way does to its barometer (TEN-2), [`tide`] the atmospheric tide (TEN-3), [`words`]
+//! the trade's words (TEN-4).
 
 use serde::{Deserialize, Serialize};
 
 use crate::instant::Instant;
 use crate::report::{Identifier, Platform};
 use crate::sphere::Position;
+
+pub mod characteristic;
+pub mod motion;
+pub mod rows;
+pub mod tide;
+pub mod words;
+
+pub use rows::table;
 
 /// One row of the pressure-tendency table.
 #[derive(Clone, PartialEq, Debug, Serialize, Deserialize)]
