@@ -29,6 +29,9 @@ pub struct Grid {
     pub rows: usize,
 }
 
+/// A place on the edge may fall outside by rounding: so many steps are forgiven.
+const EDGE_STEPS: f64 = 1e-6;
+
 impl Grid {
     /// A grid of about `columns` x `rows` points over the box, spaced evenly on a fitted map.
     ///
@@ -121,8 +124,8 @@ impl Grid {
     /// Whether a place lies on the grid.
     pub fn contains(&self, place: Position) -> bool {
         let (column, row) = self.locate(place);
-        (0.0..=(self.columns - 1) as f64).contains(&column)
-            && (0.0..=(self.rows - 1) as f64).contains(&row)
+        (-EDGE_STEPS..=(self.columns - 1) as f64 + EDGE_STEPS).contains(&column)
+            && (-EDGE_STEPS..=(self.rows - 1) as f64 + EDGE_STEPS).contains(&row)
     }
 
     /// True distance between neighbours at a latitude, m.
@@ -140,12 +143,10 @@ impl Grid {
     /// Bilinear value at a fractional grid place; `None` outside or next to a NaN.
     pub fn sample_at(&self, values: &[f64], column: f64, row: f64) -> Option<f64> {
         let (last_column, last_row) = ((self.columns - 1) as f64, (self.rows - 1) as f64);
-        // A place on the edge may fall outside by rounding.
-        let slack = 1e-9;
-        let inside = column >= -slack
-            && row >= -slack
-            && column <= last_column + slack
-            && row <= last_row + slack;
+        let inside = column >= -EDGE_STEPS
+            && row >= -EDGE_STEPS
+            && column <= last_column + EDGE_STEPS
+            && row <= last_row + EDGE_STEPS;
         if !inside {
             return None;
         }

@@ -42,6 +42,7 @@ impl HourAnalysis {
             pressures_used: 0,
             winds_used: 0,
             fingerprint: 0,
+            statistics: super::Statistics::default(),
             surface,
         }
     }

@@ -1,2 +1,19 @@
 //! The benchmarks: they report and never fail a build by the clock.
-fn main() {}
+//!
+//! Without arguments all run; else those whose names are given.
+#![expect(clippy::print_stdout, reason = "a benchmark reports on the terminal")]
+
+mod accuracy;
+mod analysis;
+
+fn main() {
+    let wanted: Vec<String> =
+        std::env::args().skip(1).filter(|word| !word.starts_with('-')).collect();
+    let asked = |name: &str| wanted.is_empty() || wanted.iter().any(|word| word == name);
+    if asked("analysis") {
+        analysis::run();
+    }
+    if asked("accuracy") {
+        accuracy::run();
+    }
+}

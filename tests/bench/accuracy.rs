@@ -1,0 +1,181 @@
+//! How good the analysis is: against fields and withheld reports of other makers, and against
+//! general-purpose interpolators on the very same reports (tests/reference/interpolators.py).
+
+use std::collections::BTreeMap;
+use std::io::Read;
+use std::sync::Arc;
+
+use flate2::read::GzDecoder;
+use glasskeeper::analysis::{AnalysisSettings, HourAnalysis, analyse};
+use glasskeeper::field::Grid;
+use glasskeeper::instant::{Hour, Instant};
+use glasskeeper::obs::{Observation, PressureSource, Provenance};
+use glasskeeper::report::{Form, Identifier, Platform, Report};
+use glasskeeper::sphere::Position;
+
+/// A report made by hand, with the errors of the reference runs: 0.5 hPa on land, 1.0 at sea, winds
+/// 1.5 m/s.
+pub(crate) fn observation(
+    number: u32,
+    platform: Platform,
+    position: Position,
+    pressure_hpa: f64,
+    wind_m_s: (f64, f64),
+) -> Observation {
+    let station = Identifier::new(&format!("{number:05}")).expect("a short name");
+    let time = Instant::from_unix_s(0);
+    let report = Report::empty(station, platform, Form::Csv, time);
+    Observation {
+        report,
+        position,
+        hour: time.hour_nearest(),
+        barometer_height_m: None,
+        pressure_msl_hpa: Some(pressure_hpa),
+        pressure_error_hpa: if platform == Platform::Land { 0.5 } else { 1.0 },
+        pressure_source: Some(PressureSource::Reported),
+        wind_m_s: Some(wind_m_s),
+        wind_error_m_s: 1.5,
+        findings: Vec::new(),
+        provenance: Provenance {
+            file: String::new(),
+            content: String::new(),
+            start: 0,
+            end: 0,
+            received: time,
+        },
+    }
+}
+
+#[expect(clippy::disallowed_methods, reason = "a benchmark reads its data")]
+pub(crate) fn table(name: &str) -> Vec<Vec<String>> {
+    let path = format!("{}/tests/data/{name}", env!("CARGO_MANIFEST_DIR"));
+    let bytes = std::fs::read(&path).expect("the data file is part of the checkout");
+    let mut text = String::new();
+    if bytes.starts_with(&[0x1f, 0x8b]) {
+        GzDecoder::new(&bytes[..]).read_to_string(&mut text).expect("gzip");
+    } else {
+        text = String::from_utf8(bytes).expect("text");
+    }
+    let mut reader = csv::ReaderBuilder::new()
+        .has_headers(true)
+        .flexible(true)
+        .comment(Some(b'#'))
+        .from_reader(text.as_bytes());
+    reader.records().map(|row| row.expect("csv").iter().map(str::to_owned).collect()).collect()
+}
+
+pub(crate) fn number(text: &str) -> f64 {
+    text.parse().unwrap_or(f64::NAN)
+}
+
+fn rms(values: &[f64]) -> f64 {
+    (values.iter().map(|value| value * value).sum::<f64>() / values.len().max(1) as f64).sqrt()
+}
+
+/// Root mean square error, over all and over sea, and the spread of the error over what was claimed.
+fn against_truth(analysis: &HourAnalysis, truth: &[(Position, bool, f64)]) -> [f64; 3] {
+    let (mut all, mut sea, mut normalised) = (Vec::new(), Vec::new(), Vec::new());
+    for (place, at_sea, pressure_hpa) in truth {
+        let at = analysis.at(*place).expect("the grid covers the truth");
+        let error = at.pressure_hpa - pressure_hpa;
+        all.push(error);
+        if *at_sea {
+            sea.push(error);
+        }
+        normalised.push(error / at.pressure_error_hpa.max(1e-6));
+    }
+    [rms(&all), rms(&sea), rms(&normalised)]
+}
+
+fn january() {
+    println!("accuracy: January 1996 fields sampled as reports; RMSE in hPa, all and (sea)");
+    println!(
+        "  hour               count   pressure only      with wind      thin plate   smoothed best   claimed"
+    );
+    let reports = table("analysis_january_1996.csv.gz");
+    let truth = table("analysis_january_1996_truth.csv.gz");
+    let reference = table("analysis_reference.csv");
+    let mut hours: Vec<&String> = truth.iter().map(|row| &row[0]).collect();
+    hours.dedup();
+    let grid = Arc::new(Grid::fitted(19.0, 61.0, -141.0, -51.5, 121, 101));
+    let mut ratios: BTreeMap<u32, [Vec<f64>; 4]> = BTreeMap::new();
+    for hour in hours {
+        let truth: Vec<(Position, bool, f64)> = truth
+            .iter()
+            .filter(|row| &row[0] == hour)
+            .map(|row| {
+                let place = Position::clamped(number(&row[1]), number(&row[2]));
+                (place, row[3] == "1", number(&row[4]))
+            })
+            .collect();
+        for count in [100, 300, 1000] {
+            let list: Vec<Arc<Observation>> = reports
+                .iter()
+                .filter(|row| &row[0] == hour && row[1] == count.to_string())
+                .zip(0..)
+                .map(|(row, k)| {
+                    let place = Position::clamped(number(&row[2]), number(&row[3]));
+                    let platform = if row[4] == "1" { Platform::Land } else { Platform::Ship };
+                    let wind = (number(&row[6]), number(&row[7]));
+                    Arc::new(observation(k, platform, place, number(&row[5]), wind))
+                })
+                .collect();
+            let zero = Hour::from_unix_h(0);
+            let observations = BTreeMap::from([(zero, list)]);
+            let of = |use_winds| {
+                let settings = AnalysisSettings { use_winds, ..AnalysisSettings::default() };
+                analyse(&grid, zero, &observations, &settings)
+            };
+            let (alone, both) = (of(false), of(true));
+            let (a, b) = (against_truth(&alone, &truth), against_truth(&both, &truth));
+            let plates: Vec<[f64; 2]> = reference
+                .iter()
+                .filter(|row| row[0] == "january" && &row[1] == hour && row[2] == count.to_string())
+                .map(|row| [number(&row[4]), number(&row[5])])
+                .collect();
+            let best = plates
+                .iter()
+                .copied()
+                .fold([f64::INFINITY; 2], |x, y| [x[0].min(y[0]), x[1].min(y[1])]);
+            let plain = plates[0];
+            println!(
+                "  {hour} {count:5}   {:.3} ({:.3})   {:.3} ({:.3})   {:.3} ({:.3})   {:.3} ({:.3})   {:.2} {:.2}   L {:.0} s {:.1}",
+                a[0],
+                a[1],
+                b[0],
+                b[1],
+                plain[0],
+                plain[1],
+                best[0],
+                best[1],
+                a[2],
+                b[2],
+                both.statistics.length_km,
+                both.statistics.sigma_hpa
+            );
+            let entry = ratios.entry(count).or_default();
+            for (list, ratio) in entry.iter_mut().zip([
+                a[0] / best[0],
+                b[0] / best[0],
+                b[0] / plain[0],
+                b[1] / plain[1],
+            ]) {
+                list.push(ratio);
+            }
+        }
+    }
+    for (count, [alone, best, plain, sea]) in ratios {
+        let mean = |list: &[f64]| list.iter().sum::<f64>() / list.len() as f64;
+        println!(
+            "  {count:5}: pressure only / smoothed plate {:.3}; with wind / smoothed plate {:.3}; / plate {:.3}; sea / plate {:.3}",
+            mean(&alone),
+            mean(&best),
+            mean(&plain),
+            mean(&sea)
+        );
+    }
+}
+
+pub(crate) fn run() {
+    january();
+}
