@@ -5,6 +5,10 @@ use serde::{Deserialize, Serialize};
 use crate::instant::Instant;
 use crate::sphere::Position;
 
+mod rules;
+
+pub use rules::{Evidence, Thresholds, place_words, raise};
+
 /// How pressing an alert is.
 #[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Debug, Serialize, Deserialize)]
 #[serde(rename_all = "lowercase")]
@@ -65,4 +69,21 @@ pub struct Alert {
     pub since: Instant,
     /// Whether the watchkeeper has acknowledged it.
     pub acknowledged: bool,
+}
+
+impl Rule {
+    /// The word that keys begin with.
+    pub const fn word(self) -> &'static str {
+        match self {
+            Self::RapidFall => "rapid_fall",
+            Self::ExplosiveDeepening => "explosive_deepening",
+            Self::DeepeningAhead => "deepening_ahead",
+            Self::Gale => "gale",
+            Self::SystemNear => "system_near",
+            Self::NewSystem => "new_system",
+            Self::WeakAnalysis => "weak_analysis",
+            Self::StaleFeed => "stale_feed",
+            Self::SourceGone => "source_gone",
+        }
+    }
 }

@@ -217,7 +217,11 @@ fn centre(analysis: &HourAnalysis, kind: Kind, basin: &Basin, sign: f64) -> Opti
 /// Probability that a depth is more than the errors of centre and saddle could make of nothing;
 /// the two errors are half alike, so that of their difference is about the error itself.
 fn confidence(depth_hpa: f64, error_hpa: f64) -> f64 {
-    let z = depth_hpa / error_hpa.max(0.05);
+    normal_share(depth_hpa / error_hpa.max(0.05))
+}
+
+/// Share of a normal distribution that lies below `z` standard deviations.
+pub fn normal_share(z: f64) -> f64 {
     0.5 * (1.0 + erf(z / std::f64::consts::SQRT_2))
 }
 
