@@ -23,7 +23,10 @@ pub(crate) fn read<L: Listener>(
     if place.text == b"COR" {
         revision = revision.max(Revision::Correction(1));
         listener.part(place, || "a correction".to_owned());
-        let Some(next) = groups.next() else { return Outcome::Lost };
+        let Some(next) = groups.next() else {
+            listener.complain(place, "FM 15, CCCC", || "nothing follows: lost".to_owned());
+            return Outcome::Lost;
+        };
         place = next;
     }
     let named = place.text.len() == 4
@@ -45,7 +48,10 @@ pub(crate) fn read<L: Listener>(
     if when.text == b"COR" {
         revision = revision.max(Revision::Correction(1));
         listener.part(when, || "a correction".to_owned());
-        let Some(next) = groups.next() else { return Outcome::Lost };
+        let Some(next) = groups.next() else {
+            listener.complain(when, "FM 15, YYGGggZ", || "nothing follows: lost".to_owned());
+            return Outcome::Lost;
+        };
         when = next;
     }
     if when.text.starts_with(b"NIL") {
@@ -117,10 +123,17 @@ fn body<L: Listener>(groups: &mut Groups<'_>, report: &mut Report, listener: &mu
                 wind::read(group, report, listener);
             }
             _ if wind::is_sector(group) => wind::sector(group, report, listener),
+            [b'S', b'L', b'P', _, ..] => remarks::sea_level(group, report, listener),
             [b'Q', ..] => pressure::q(group, report, listener),
             [b'A', b'0'..=b'9' | b'/', ..] => pressure::a(group, report, listener),
             _ if temperature::is_pair(group) => temperature::pair(group, report, listener),
             [b'W', ..] if temperature::is_sea(group) => temperature::sea(group, report, listener),
+            _ if !wind_read && wind::lacks_unit(group) => {
+                wind_read = true;
+                listener.complain(group, "FM 15, dddffGfmfm and unit", || {
+                    "the wind has no unit and is not used".to_owned()
+                });
+            }
             _ => other(group, listener),
         }
     }

@@ -6,7 +6,7 @@
 use crate::instant::Instant;
 use crate::report::{Form, Identifier, Platform, Report, Revision};
 use crate::wire::calendar::Calendar;
-use crate::wire::group::Groups;
+use crate::wire::group::{Group, Groups};
 use crate::wire::listener::{Listener, Outcome};
 use crate::wire::wind_unit::WindUnit;
 
@@ -101,6 +101,15 @@ pub(crate) fn mobile<L: Listener>(
     body(groups, &report, place.unit, listener)
 }
 
+/// Two groups between which the blank was lost.
+fn run_together(group: Group<'_>) -> Option<(Group<'_>, Group<'_>)> {
+    if !group.is_coded(10) {
+        return None;
+    }
+    let (one, two) = group.text.split_at_checked(5)?;
+    Some((Group { text: one, start: group.start }, Group { text: two, start: group.start + 5 }))
+}
+
 fn is_nil<L: Listener>(groups: &Groups<'_>, listener: &mut L) -> bool {
     let Some(group) = groups.peek() else { return false };
     if !group.text.eq_ignore_ascii_case(b"NIL") {
@@ -129,7 +138,15 @@ fn body<L: Listener>(
         listener.part(group, || "a correction".to_owned());
     }
     first.positional(&mut groups, listener);
-    while let Some(group) = groups.next() {
+    let mut second_half = None;
+    while let Some(mut group) = second_half.take().or_else(|| groups.next()) {
+        if let Some((one, two)) = run_together(group) {
+            listener.complain(group, "groups of five figures", || {
+                "two groups run together: read as two".to_owned()
+            });
+            group = one;
+            second_half = Some(two);
+        }
         match group.text {
             b"333" => {
                 section = Section::Three;

@@ -208,10 +208,10 @@ impl<'a, 'l, L: Listener> Walk<'a, 'l, L> {
 
     /// `AAXX YYGGiw`, which holds for every report that follows (METHODS COD-2).
     fn land_line(&mut self) {
-        let mut groups = Groups::new(self.bytes, self.at, self.bytes.len());
-        let mut to = groups.next().map_or(self.at + 4, |group| group.end());
         let rest = self.rest();
         let rest = rest.get(..heading::HEADING_BYTES_MAX).unwrap_or(rest);
+        let mut to = self.at + 4;
+        let mut groups = Groups::new(self.bytes, to, self.at + rest.len());
         let line_end = self.at + heading::line_length(rest);
         let time = groups.next().filter(|group| group.start < line_end + 4);
         let (hour, unit) = match time {
@@ -225,7 +225,6 @@ impl<'a, 'l, L: Listener> Walk<'a, 'l, L> {
                 read
             }
             _ => {
-                to = to.min(self.at + 4);
                 self.refuse(to, "FM 12 section 0: AAXX YYGGiw", || {
                     "no day and hour follow: the reports below have no time".to_owned()
                 });

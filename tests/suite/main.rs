@@ -1,5 +1,6 @@
 //! The suite: one binary, so that it is linked once and runs in parallel.
 mod checks;
+mod hostile;
 mod house;
 mod reduction;
 mod rehearse_command;
@@ -7,4 +8,5 @@ mod rehearse_observed;
 mod rehearse_read;
 mod rehearse_samples;
 mod rehearse_truth;
+mod wire_reference;
 mod wire_samples;

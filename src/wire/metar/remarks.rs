@@ -27,7 +27,7 @@ pub(super) fn read<L: Listener>(groups: &mut Groups<'_>, report: &mut Report, li
 
 /// `SLPppp`: tens, units and tenths (METHODS CHK-022). A value near 500 may mean either hundred:
 /// the one nearer to the altimeter setting is taken.
-fn sea_level<L: Listener>(group: Group<'_>, report: &mut Report, listener: &mut L) {
+pub(super) fn sea_level<L: Listener>(group: Group<'_>, report: &mut Report, listener: &mut L) {
     let value = match (group.text.len(), group.figures(3, 6)) {
         (6, Figures::Value(coded)) => i32::try_from(coded).unwrap_or(0),
         (6, Figures::Missing) => {

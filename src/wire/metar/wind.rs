@@ -66,6 +66,16 @@ pub(super) fn is_wind(group: Group<'_>) -> bool {
     matches!(group.text.last(), Some(b'T' | b'S' | b'H')) && parts(group).is_some()
 }
 
+/// Whether a group is a wind but for its unit: five figures, with or without a gust.
+pub(super) fn lacks_unit(group: Group<'_>) -> bool {
+    let (mean, gust) = group.text.split_at_checked(5).unwrap_or_default();
+    !mean.is_empty()
+        && mean.iter().all(u8::is_ascii_digit)
+        && (gust.is_empty()
+            || matches!(gust, [b'G', figures @ ..]
+                if figures.len() == 2 && figures.iter().all(u8::is_ascii_digit)))
+}
+
 /// A speed of two or three figures; P before it says that it is more than can be coded.
 fn speed(text: &[u8], unit: Unit) -> (Option<f64>, bool) {
     let (text, beyond) = text.strip_prefix(b"P").map_or((text, false), |text| (text, true));

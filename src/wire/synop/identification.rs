@@ -61,7 +61,11 @@ pub(crate) fn mobile<L: Listener>(
     // A report without its call sign begins with the time and the latitude.
     let unnamed = name.is_coded(5)
         && groups.peek().is_some_and(|group| group.text.starts_with(b"99") && group.is_coded(5))
-        && calendar.resolve(name.figures(0, 2).value()?, name.figures(2, 4).value()?, 0).is_some();
+        && matches!(
+            (name.figures(0, 2), name.figures(2, 4)),
+            (Figures::Value(day), Figures::Value(hour))
+                if calendar.resolve(day, hour, 0).is_some()
+        );
     let time_group = if unnamed {
         listener.complain(name, "FM 13 section 0: D....D", || {
             "the call sign is missing; SHIP is taken".to_owned()

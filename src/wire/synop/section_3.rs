@@ -9,6 +9,8 @@ use crate::wire::listener::Listener;
 pub(crate) struct Section3 {
     /// Whether the gust is the one of the last ten minutes, which goes before others.
     gust_is_latest: bool,
+    /// Whether the next group belongs to the one before it.
+    next_belongs: bool,
 }
 
 impl Section3 {
@@ -30,7 +32,17 @@ impl Section3 {
             });
             return;
         }
+        if std::mem::take(&mut self.next_belongs) {
+            listener.part(group, || "radiation".to_owned());
+            return;
+        }
         match group.text {
+            // 55407, 55408, 55507, 55508 announce that the next group is a radiation (regulation
+            // 12.4.7.1.2), whatever it looks like.
+            b"55407" | b"55408" | b"55507" | b"55508" => {
+                self.next_belongs = true;
+                listener.part(group, || "radiation follows".to_owned());
+            }
             [b'5', sign @ (b'8' | b'9'), ..] => match group.figures(2, 5) {
                 Figures::Value(value) => {
                     let value = i32::try_from(value).unwrap_or(0);
@@ -44,8 +56,8 @@ impl Section3 {
             [b'9', b'1', kind @ (b'0' | b'1'), ..] => {
                 self.gust(*kind == b'0', group, groups, first, listener);
             }
-            [b'9', b'1', b'2', ..] => {
-                listener.part(group, || "highest mean wind of the period".to_owned());
+            [b'9', b'1', b'2'..=b'4', ..] => {
+                listener.part(group, || "mean wind of a period".to_owned());
                 passed_speed(group, groups, listener);
             }
             [b'9', b'0', ..] => {
