@@ -24,6 +24,8 @@ const DETAIL_FROM: u16 = 11;
 /// What a list shows.
 struct Sheet {
     columns: &'static [Column],
+    /// Units and the like, for the title.
+    units: &'static str,
     /// What is said where there are no rows.
     nothing: &'static str,
 }
@@ -45,14 +47,18 @@ pub(super) fn draw(scene: Scene<'_>, pane: Pane, area: Rect, buf: &mut Buffer) -
     let front = scene.desk.focus == pane;
     let sheet = sheet(pane);
     let selected = list.selected.min(shown.len().saturating_sub(1));
-    let detail = if front && area.height >= DETAIL_FROM {
+    // The pane in front tells about its selected row; another one where it has rows to spare.
+    let spare = usize::from(area.height).saturating_sub(shown.len() + 1);
+    let detail = if area.height >= DETAIL_FROM && (front || spare > 4) {
         shown.get(selected).map_or_else(Vec::new, |index| {
             detail(scene, pane, *index, usize::from(area.width.saturating_sub(2)))
         })
     } else {
         Vec::new()
     };
-    let detail_rows = u16::try_from(detail.len()).unwrap_or(0).min(area.height * 2 / 5);
+    let most = area.height * 2 / 5;
+    let most = most.max(u16::try_from(spare.saturating_sub(1)).unwrap_or(0));
+    let detail_rows = u16::try_from(detail.len()).unwrap_or(0).min(most);
     // A line between the rows and the detail.
     let below = if detail_rows > 0 { detail_rows + 1 } else { 0 };
     let above = above(scene, pane, area.width);
@@ -93,6 +99,15 @@ pub(super) fn draw(scene: Scene<'_>, pane: Pane, area: Rect, buf: &mut Buffer) -
     }
     for (y, line) in (area.bottom().saturating_sub(detail_rows)..area.bottom()).zip(&detail) {
         let width = area.width.saturating_sub(1);
+        // Lines that do not fit end with the mark of what is cut.
+        let last = y + 1 == area.bottom() && usize::from(detail_rows) < detail.len();
+        let cut;
+        let line = if last {
+            cut = format!("{line} ~");
+            &cut
+        } else {
+            line
+        };
         text::put(buf, area.x + 1, y, width, line, scene.look.style(Role::Secondary));
     }
     let height = usize::from(body.height.saturating_sub(1)).max(1);
@@ -108,6 +123,10 @@ fn words(scene: Scene<'_>, pane: Pane, count: usize, first: usize, height: usize
     } else {
         format!("{count}")
     };
+    let units = sheet(pane).units;
+    if !units.is_empty() {
+        let _ = write!(out, "  {units}");
+    }
     let orders = rows::orders(pane);
     if list.order > 0 || list.reversed {
         let order = orders.get(list.order).copied().unwrap_or_default();

@@ -80,7 +80,8 @@ fn items(scene: Scene<'_>, short: bool) -> [Vec<Item>; 2] {
             first.push(summary(look.link.clone()));
         }
     }
-    let mut second = Vec::new();
+    // What matters most must not be what is cut: alerts first.
+    let mut second = vec![alerts(picture, short)];
     if let Some(low) = deepest(picture) {
         let pressure = number::fixed(low.pressure_hpa.value, usize::from(!short));
         let weak = if is_weak(low) { "?" } else { "" };
@@ -88,7 +89,7 @@ fn items(scene: Scene<'_>, short: bool) -> [Vec<Item>; 2] {
             second.push(Item::new(format!("{} {pressure}{weak}", low.name), Role::Low));
         } else {
             let error = number::fixed(low.pressure_hpa.error, 1);
-            let mut line = format!("deepest {} {pressure}{weak} hPa +-{error}", low.name);
+            let mut line = format!("deepest {} {pressure}{weak} +-{error} hPa", low.name);
             if let Some(change) = low.change_3h_hpa {
                 let _ = write!(line, ", {} in 3 h", number::signed(change.value, 1));
             }
@@ -103,6 +104,11 @@ fn items(scene: Scene<'_>, short: bool) -> [Vec<Item>; 2] {
     } else if !short {
         second.push(summary("no low found".to_owned()));
     }
+    [first, second]
+}
+
+/// How many alerts nobody has acknowledged.
+fn alerts(picture: &Picture, short: bool) -> Item {
     let open = open_alerts(picture);
     let urgent = picture
         .alerts
@@ -113,14 +119,13 @@ fn items(scene: Scene<'_>, short: bool) -> [Vec<Item>; 2] {
         (_, true) => Role::Urgent,
         (_, false) => Role::Warning,
     };
-    second.push(match (short, open) {
-        (true, 0) => summary("alerts 0".to_owned()),
+    match (short, open) {
+        (true, 0) => Item::new("alerts 0", role),
         (true, _) => Item::new(format!(" !{open} "), role),
-        (false, 0) => summary("no open alert".to_owned()),
+        (false, 0) => Item::new("no open alert", role),
         (false, 1) => Item::new(" ! 1 alert open ", role),
         (false, _) => Item::new(format!(" ! {open} alerts open "), role),
-    });
-    [first, second]
+    }
 }
 
 /// Whether a system is so little sure that it is marked.
@@ -138,8 +143,7 @@ pub(super) fn summary(buf: &mut Buffer, area: Rect, scene: Scene<'_>) {
         line(buf, Rect { height: 1, ..area }, &first, look);
         line(buf, Rect { y: area.y + 1, height: 1, ..area }, &second, look);
     } else {
-        // What matters most must not be what is cut: alerts before the rest of the second lot.
-        let all: Vec<Item> = first.into_iter().chain(second.into_iter().rev()).collect();
+        let all: Vec<Item> = first.into_iter().chain(second).collect();
         line(buf, area, &all, look);
     }
 }

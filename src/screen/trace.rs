@@ -96,7 +96,7 @@ mod tests {
 
     #[test]
     fn falls_to_the_right_with_a_gap_at_the_missing_hour() {
-        assert_eq!(lines(&FALLING, 8, 1, Glyphs::Ascii), ["  '' .__"]);
+        assert_eq!(lines(&FALLING, 8, 1, Glyphs::Ascii), ["  '' .._"]);
     }
 
     #[test]

@@ -14,6 +14,7 @@ pub(super) const SHEET: Sheet = Sheet {
         words("about", 10, 2),
         widening("what", 14, 0),
     ],
+    units: "",
     nothing: "no alert stands; few or old reports would make it so too",
 };
 

@@ -19,6 +19,7 @@ pub(super) const SHEET: Sheet = Sheet {
         widening("what was found", 16, 1),
         words("file", 24, 5),
     ],
+    units: "",
     nothing: "nothing has come in yet",
 };
 

@@ -19,6 +19,7 @@ pub(super) const SHEET: Sheet = Sheet {
         numbers("lon", 6, 1),
         widening("where", 14, 4),
     ],
+    units: "",
     nothing: "no area of convergence stands out",
 };
 

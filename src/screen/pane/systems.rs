@@ -29,6 +29,7 @@ pub(super) const SHEET: Sheet = Sheet {
         numbers("radius", 6, 10),
         words("24 h trace", 12, 11),
     ],
+    units: "hPa, degrees true, kt",
     nothing: "no high or low found in the analysis",
 };
 

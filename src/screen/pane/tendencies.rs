@@ -23,6 +23,7 @@ pub(super) const SHEET: Sheet = Sheet {
         words("24 h trace", 12, 2),
         widening("trend in words", 16, 1),
     ],
+    units: "hPa",
     nothing: "no station with a pressure tendency",
 };
 

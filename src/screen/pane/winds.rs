@@ -24,6 +24,7 @@ pub(super) const SHEET: Sheet = Sheet {
         numbers("d deg", 5, 4),
         widening("what explains it", 16, 6),
     ],
+    units: "degrees/kt",
     nothing: "no station or watch point with a wind",
 };
 
