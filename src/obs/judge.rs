@@ -34,6 +34,7 @@ struct SeaLevel {
 #[derive(Clone, Copy, PartialEq, Debug)]
 struct Column {
     temperature_c: f64,
+    now_c: f64,
     vapour_hpa: f64,
     error_k: f64,
 }
@@ -128,16 +129,13 @@ fn sea_level(case: &Case<'_>, within: gross::Within, findings: &mut Findings) ->
     let forgotten = internal::height_forgotten(case, findings);
     let (height_m, height_error_m) = barometer(case);
     let column = height_m.map(|height_m| column(case, within, height_m));
-    let reduced = |station_hpa: f64| {
+    let through = |station_hpa: f64, temperature: fn(&Column) -> f64| {
         let (height_m, column) = (height_m?, column?);
-        let pressure_hpa = reduction::to_sea_level_hpa(
-            station_hpa,
-            height_m,
-            column.temperature_c,
-            column.vapour_hpa,
-        );
+        let (t_c, e_hpa) = (temperature(&column), column.vapour_hpa);
+        let pressure_hpa = reduction::to_sea_level_hpa(station_hpa, height_m, t_c, e_hpa);
         gross::PRESSURE_MSL_HPA.contains(&pressure_hpa).then_some(pressure_hpa)
     };
+    let reduced = |station_hpa: f64| through(station_hpa, |column| column.temperature_c);
     let reduction_hpa = |pressure_hpa: f64| match (height_m, column) {
         (Some(height_m), Some(column)) => {
             let (t_c, e_hpa) = (column.temperature_c, column.vapour_hpa);
@@ -145,14 +143,17 @@ fn sea_level(case: &Case<'_>, within: gross::Within, findings: &mut Findings) ->
         }
         _ => 0.0,
     };
-    let from_station =
-        report.pressure_station_hpa.filter(|_| within.pressure_station).and_then(reduced);
+    let station_hpa = report.pressure_station_hpa.filter(|_| within.pressure_station);
+    let from_station = station_hpa.and_then(reduced);
     if let Some(pressure_hpa) = report.pressure_msl_hpa.filter(|_| within.pressure_msl) {
-        if let Some(own) = from_station
+        let with_now = station_hpa.and_then(|hpa| through(hpa, |column| column.now_c));
+        if let (Some(mean), Some(now)) = (from_station, with_now)
             && !forgotten
+            && within.air_temperature
+            && report.air_temperature_c.is_some()
             && site.barometer_height_m.is_some()
         {
-            internal::reduction_agrees(case, pressure_hpa, own, findings);
+            internal::reduction_agrees(case, pressure_hpa, [now, mean], findings);
         }
         return Some(SeaLevel {
             pressure_hpa,
@@ -214,7 +215,7 @@ fn column(case: &Case<'_>, within: gross::Within, height_m: f64) -> Column {
         let latitude_deg = case.site.position.latitude_deg();
         let temperature_c = reduction::assumed_temperature_c(height_m, latitude_deg);
         let vapour_hpa = reduction::vapour_hpa(temperature_c, None, None);
-        return Column { temperature_c, vapour_hpa, error_k: COLUMN_ASSUMED_K };
+        return Column { temperature_c, now_c: temperature_c, vapour_hpa, error_k: COLUMN_ASSUMED_K };
     };
     let then = report.time.plus_s(-12 * HOUR_S);
     let sound = |temperature_c: &f64| gross::AIR_TEMPERATURE_C.contains(temperature_c);
@@ -227,7 +228,7 @@ fn column(case: &Case<'_>, within: gross::Within, height_m: f64) -> Column {
     let dew_c = report.dew_point_c.filter(|_| within.dew_point);
     let temperature_c = reduction::reduction_temperature_c(now_c, then_c);
     let vapour_hpa = reduction::vapour_hpa(now_c, dew_c, report.relative_humidity_percent);
-    Column { temperature_c, vapour_hpa, error_k: COLUMN_K }
+    Column { temperature_c, now_c, vapour_hpa, error_k: COLUMN_K }
 }
 
 /// The watchkeeper's word over the checks: the findings stay, with his verdict in place of theirs.

@@ -2,6 +2,7 @@
 mod checks;
 mod hostile;
 mod house;
+mod obs_real_hours;
 mod reduction;
 mod rehearse_command;
 mod rehearse_observed;

@@ -11,6 +11,17 @@ const CHANGE_GOOD_HPA: f64 = 1.0;
 const CHANGE_WRONG_HPA: f64 = 3.0;
 /// Seconds that the report of three hours ago may lie off.
 const THREE_HOURS_TOLERANCE_S: i64 = 20 * 60;
+const DIRECTION_AND_SPEED: &str = "QC-2 direction and speed";
+/// A ground height that stands for the barometer's may be off by this, m ...
+const GROUND_FOR_BAROMETER_M: f64 = 5.0;
+/// ... and a metre is worth this, hPa (METHODS RED-2).
+const METRE_HPA: f64 = 0.12;
+/// What rounding both pressures to tenths can make of their difference, hPa.
+const ROUNDING_HPA: f64 = 0.1;
+/// Height, m, up to which all ways of reducing agree within the rounding and a kelvin.
+const METHODS_AGREE_M: f64 = 150.0;
+/// What a kelvin is worth for each metre of height, hPa (METHODS RED-3).
+const KELVIN_HPA_M: f64 = 0.000_43;
 /// Height, m, above which equal station and sea-level pressures mean a forgotten reduction.
 const HEIGHT_FORGOTTEN_M: f64 = 20.0;
 
@@ -57,12 +68,15 @@ fn wind(case: &Case<'_>, findings: &mut Findings) {
         Some(from) if from == 0.0 && speed > 0.0 => {
             format!("direction 0 means calm, but the speed is {speed:.1} m/s")
         }
+        // Automatic stations keep the last direction in a calm: worth a word, not a doubt.
         Some(from) if from > 0.0 && speed == 0.0 => {
-            format!("calm, but from {from:.0} degrees")
+            let reason = format!("calm, but from {from:.0} degrees");
+            findings.add(Element::Wind, Verdict::Sound, DIRECTION_AND_SPEED, reason);
+            return;
         }
         _ => return,
     };
-    findings.add(Element::Wind, Verdict::Doubtful, "QC-2 direction and speed", reason);
+    findings.add(Element::Wind, Verdict::Doubtful, DIRECTION_AND_SPEED, reason);
 }
 
 /// The reported change against the difference of the station's own two pressures.
@@ -100,23 +114,40 @@ fn own_series(case: &Case<'_>, findings: &mut Findings) {
     }
 }
 
-/// The reported sea-level pressure against the one reduced here (METHODS RED-4): `Doubtful` where
-/// they differ by more than 0.5 hPa and 0.003 hPa for each metre of height.
+/// The reported sea-level pressure against those reduced here with the temperature of now and the
+/// mean of 12 hours (METHODS RED-4): `Doubtful` where it lies further from both than 0.5 hPa and
+/// 0.003 hPa for each metre of height, or further still where only the ground's height is known.
+/// Below 150 m a difference beyond the rounding is worth a word: there all methods agree.
 pub fn reduction_agrees(
     case: &Case<'_>,
     reported_hpa: f64,
-    reduced_hpa: f64,
+    reduced_hpa: [f64; 2],
     findings: &mut Findings,
 ) {
     let height_m = case.site.barometer_height_m.unwrap_or(0.0);
-    let tolerance_hpa = 0.5 + 0.003 * height_m.abs();
-    let miss = reduced_hpa - reported_hpa;
+    let unsure_m = if case.site.barometer_is_own { 0.0 } else { GROUND_FOR_BAROMETER_M };
+    let tolerance_hpa = 0.5 + 0.003 * height_m.abs() + METRE_HPA * unsure_m;
+    let [now, mean] = reduced_hpa.map(|reduced| reduced - reported_hpa);
+    let (miss, reduced) =
+        if now.abs() <= mean.abs() { (now, reduced_hpa[0]) } else { (mean, reduced_hpa[1]) };
+    let reason = || {
+        format!(
+            "reported {reported_hpa:.1} hPa at sea level, {reduced:.1} by reduction from \
+             {height_m:.0} m: {miss:+.2}"
+        )
+    };
+    let fine_hpa = ROUNDING_HPA + KELVIN_HPA_M * height_m.abs();
+    let check = "RED-4 reduction";
     if miss.abs() > tolerance_hpa {
-        let reason = format!(
-            "reported {reported_hpa:.1} hPa at sea level, {reduced_hpa:.1} by reduction from \
-             {height_m:.0} m: {miss:+.1}, tolerance {tolerance_hpa:.1}"
-        );
-        findings.add(Element::Pressure, Verdict::Doubtful, "RED-4 reduction", reason);
+        let reason = format!("{}, tolerance {tolerance_hpa:.1}", reason());
+        findings.add(Element::Pressure, Verdict::Doubtful, check, reason);
+    } else if case.site.barometer_is_own
+        && case.report.dew_point_c.is_some()
+        && height_m.abs() <= METHODS_AGREE_M
+        && miss.abs() > fine_hpa
+    {
+        let reason = format!("{}, rounding explains {fine_hpa:.2}", reason());
+        findings.add(Element::Pressure, Verdict::Sound, check, reason);
     }
 }
 
