@@ -12,6 +12,7 @@ use crate::report::Report;
 pub mod gross;
 pub mod internal;
 pub mod persistence;
+pub mod place;
 pub mod slip;
 pub mod track;
 

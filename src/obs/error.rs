@@ -54,7 +54,7 @@ pub fn pressure_hpa(report: &Report, case: &PressureCase) -> f64 {
         Platform::Buoy => BUOY_MOORED_HPA,
     };
     let rounding = match case.source {
-        PressureSource::FromAltimeter => report.altimeter_rounding_hpa,
+        PressureSource::FromAltimeter => report.altimeter_rounding_hpa.clamp(0.0, 10.0),
         PressureSource::FromStandardSurface => SURFACE_HPA,
         PressureSource::Reported | PressureSource::ReducedFromStation => 0.0,
     };

@@ -52,6 +52,7 @@ pub(super) fn judge(
     let mut findings = Findings::default();
     let within = gross::check(&case, &mut findings);
     internal::check(&case, &mut findings);
+    check::place::check(&case, &mut findings);
     check::track::check(&case, &mut findings);
     check::persistence::check(&case, &mut findings);
     let sea_level = sea_level(&case, within, &mut findings);
@@ -104,9 +105,9 @@ pub(super) fn judge(
     }
     if let Some((speed_m_s, height_known)) = ten_metres {
         let wind_verdict = observation.verdict(Element::Wind);
-        observation.wind_error_m_s =
-            error::wind_m_s(report, speed_m_s, height_known) * doubt(wind_verdict);
         if wind_verdict.max(misplaced) < Verdict::Refused {
+            observation.wind_error_m_s =
+                error::wind_m_s(report, speed_m_s, height_known) * doubt(wind_verdict);
             observation.wind_m_s = components(report, speed_m_s);
         }
     }
@@ -215,7 +216,12 @@ fn column(case: &Case<'_>, within: gross::Within, height_m: f64) -> Column {
         let latitude_deg = case.site.position.latitude_deg();
         let temperature_c = reduction::assumed_temperature_c(height_m, latitude_deg);
         let vapour_hpa = reduction::vapour_hpa(temperature_c, None, None);
-        return Column { temperature_c, now_c: temperature_c, vapour_hpa, error_k: COLUMN_ASSUMED_K };
+        return Column {
+            temperature_c,
+            now_c: temperature_c,
+            vapour_hpa,
+            error_k: COLUMN_ASSUMED_K,
+        };
     };
     let then = report.time.plus_s(-12 * HOUR_S);
     let sound = |temperature_c: &f64| gross::AIR_TEMPERATURE_C.contains(temperature_c);

@@ -5,6 +5,7 @@
 
 mod accuracy;
 mod analysis;
+mod obs;
 
 fn main() {
     let wanted: Vec<String> =
@@ -15,5 +16,8 @@ fn main() {
     }
     if asked("accuracy") {
         accuracy::run();
+    }
+    if asked("obs") {
+        obs::run();
     }
 }

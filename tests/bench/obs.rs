@@ -6,9 +6,7 @@ use std::time::{Duration, Instant as Clock};
 
 use glasskeeper::instant::{Hour, Instant};
 use glasskeeper::obs::held::Held;
-use glasskeeper::obs::{
-    Catalogue, ObsSettings, Observer, Provenance, observe, observe_hour,
-};
+use glasskeeper::obs::{Catalogue, ObsSettings, Observer, Provenance, observe, observe_hour};
 use glasskeeper::report::Report;
 use glasskeeper::tendency;
 use glasskeeper::wire::{Context, read};
@@ -55,8 +53,8 @@ fn provenance(step: i64) -> Provenance {
     }
 }
 
-/// Measures and reports to `out`.
-pub fn run(out: &mut dyn std::io::Write) -> std::io::Result<()> {
+/// Measures and reports.
+pub fn run() {
     let reports = world_hour();
     let hour = Instant::from_unix_s(1_541_160_000).hour_floor();
     let newest = hour.plus(71);
@@ -72,32 +70,30 @@ pub fn run(out: &mut dyn std::io::Write) -> std::io::Result<()> {
     });
     let counts = held.counts();
     let inserted = counts.held + counts.repeats + counts.corrections + counts.outranked;
-    writeln!(
-        out,
+    println!(
         "held: {inserted} copies of {} reports in {filling:.1?}, {:.0} a millisecond, {:.0} MB",
         counts.held,
         inserted as f64 / filling.as_secs_f64() / 1e3,
         resident_mb() - before,
-    )?;
+    );
     let (catalogue, reading) = timed(Catalogue::built_in);
-    writeln!(out, "catalogue: {} names read in {reading:.1?}", catalogue.len())?;
+    println!("catalogue: {} names read in {reading:.1?}", catalogue.len());
     let settings = ObsSettings::default();
     let (one, judging) = timed(|| observe_hour(&held, &catalogue, newest, &settings));
-    writeln!(out, "one world hour judged: {} in {judging:.1?}", one.observations.len())?;
+    println!("one world hour judged: {} in {judging:.1?}", one.observations.len());
     let day = newest.plus(-25)..=newest;
     let (all, judging) = timed(|| observe(&held, &catalogue, day.clone(), &settings));
-    writeln!(out, "26 world hours judged: {} in {judging:.1?}", all.observations().count())?;
+    println!("26 world hours judged: {} in {judging:.1?}", all.observations().count());
     let mut observer = Observer::new();
     let (_, first) = timed(|| observer.observe(&held, &catalogue, day.clone(), &settings));
     late_report(&mut held, reports.first(), newest);
     let (late, second) = timed(|| observer.observe(&held, &catalogue, day, &settings));
-    writeln!(out, "observer: {first:.1?} at first, {second:.1?} for one late report")?;
+    println!("observer: {first:.1?} at first, {second:.1?} for one late report");
     let now = newest.instant().plus_s(600);
     let (rows, making) =
         timed(|| tendency::table(&late, now, newest, &catalogue, &|_, _| Some(1000.0)));
-    writeln!(out, "tendency table: {} rows in {making:.1?}", rows.len())?;
+    println!("tendency table: {} rows in {making:.1?}", rows.len());
     black_box((one, all, late));
-    Ok(())
 }
 
 fn late_report(held: &mut Held, report: Option<&Report>, newest: Hour) {

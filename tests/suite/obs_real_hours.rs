@@ -31,8 +31,7 @@ fn held(file: &str, received: &str) -> Held {
 fn world() -> (Held, Observed, Hour) {
     let held = held("perf_synop.bufr.gz", "2018-11-02T13:00:00Z");
     let hour = Instant::from_calendar(2018, 11, 2, 12, 0).expect("a time").hour_floor();
-    let observed =
-        observe(&held, &Catalogue::built_in(), hour..=hour, &ObsSettings::default());
+    let observed = observe(&held, &Catalogue::built_in(), hour..=hour, &ObsSettings::default());
     (held, observed, hour)
 }
 

@@ -10,6 +10,8 @@ use crate::sphere::Position;
 /// Distance, km, from which a report's own place and the catalogue's are a conflict. Catalogues
 /// round to minutes of arc and mix town and station: 10 km is beyond both.
 pub const CONFLICT_KM: f64 = 10.0;
+/// Heights of stations on this earth, m: the Dead Sea to above the highest mast on a summit.
+pub const HEIGHTS_M: std::ops::RangeInclusive<f64> = -450.0..=9000.0;
 /// The same for heights, m: 4 hPa if a reduction believed the wrong one.
 pub const CONFLICT_M: f64 = 30.0;
 
@@ -20,6 +22,8 @@ pub struct Site {
     pub position: Position,
     /// Who says so.
     pub position_source: Source,
+    /// Where the built-in catalogue has it.
+    pub listed: Option<Position>,
     /// Height of the ground, m.
     pub station_height_m: Option<f64>,
     /// Height of the barometer, m: its own, else that of the ground.
@@ -64,8 +68,10 @@ pub fn resolve(catalogue: &Catalogue, places: Option<&Places>, report: &Report) 
         learnt.and_then(|place| place.station_height_m),
         standard.and_then(|row| row.station_height_m),
     ];
-    let barometer = barometers.into_iter().flatten().next();
-    let ground = grounds.into_iter().flatten().next();
+    let first = |heights: [Option<f64>; 4]| {
+        heights.into_iter().flatten().find(|height_m| HEIGHTS_M.contains(height_m))
+    };
+    let (barometer, ground) = (first(barometers), first(grounds));
     // A user who gives the ground alone means the barometer too: it stands before other sources.
     let user_ground = user.and_then(|row| row.barometer_height_m.or(row.station_height_m));
     let barometer = if user_ground.is_some() { user_ground } else { barometer };
@@ -73,6 +79,7 @@ pub fn resolve(catalogue: &Catalogue, places: Option<&Places>, report: &Report) 
     Some(Site {
         position,
         position_source,
+        listed: standard.and_then(|row| row.position),
         station_height_m: ground,
         barometer_height_m: barometer.or(if at_sea { None } else { ground }),
         barometer_is_own: barometer.is_some(),

@@ -1,3 +1,5 @@
+use proptest::prelude::Just;
+
 use super::*;
 use crate::instant::Instant;
 use crate::obs::{Element, PressureSource, Provenance, Verdict};
@@ -44,8 +46,9 @@ fn made(reports: &[Report], hour: Hour) -> Vec<Arc<Observation>> {
     for report in reports {
         held.insert(*report, provenance(0));
     }
-    let catalogue = Catalogue::built_in();
-    observe(&held, &catalogue, hour..=hour, &ObsSettings::default()).hour(hour).to_vec()
+    static CATALOGUE: std::sync::LazyLock<Catalogue> =
+        std::sync::LazyLock::new(Catalogue::built_in);
+    observe(&held, &CATALOGUE, hour..=hour, &ObsSettings::default()).hour(hour).to_vec()
 }
 
 #[track_caller]
@@ -244,6 +247,79 @@ fn the_watchkeeper_overrules() {
     let observed = observe(&held, &Catalogue::empty(), start()..=start(), &settings);
     let observation = observed.hour(start()).first().expect("kept");
     assert_eq!((observation.pressure_msl_hpa, observation.wind_m_s), (None, None));
+}
+
+/// 03772 stands at 51.48 N 0.45 W; 01001 at 70.93 N 8.67 W.
+#[test]
+fn a_station_that_reports_itself_elsewhere_is_doubted_and_a_swapped_hemisphere_refused() {
+    let mut report = synop("01001", start(), 1000.0);
+    report.form = Form::Bufr;
+    report.position = Position::new(70.9, -8.7);
+    assert_eq!(first(&[report], start()).findings, []);
+    report.position = Position::new(72.9, -8.7);
+    let doubted = first(&[report], start());
+    assert_eq!(doubted.verdict(Element::Position), Verdict::Doubtful);
+    assert!(doubted.pressure_msl_hpa.is_some());
+    report.position = Position::new(70.93, 8.67);
+    let refused = first(&[report], start());
+    assert_eq!(refused.verdict(Element::Position), Verdict::Refused);
+    assert_eq!(refused.pressure_msl_hpa, None);
+    let reason = &refused.findings.first().expect("a finding").reason;
+    assert!(reason.ends_with("a swapped hemisphere explains it"), "{reason}");
+}
+
+proptest::proptest! {
+    /// Whatever a report holds, nothing that is not a number or impossible comes out.
+    #[test]
+    fn no_report_makes_a_value_that_is_not_one(
+        values in proptest::collection::vec(
+            proptest::option::of(proptest::prop_oneof![
+                proptest::num::f64::ANY,
+                -1e3..1e5_f64,
+                Just(0.0),
+                900.0..1100.0_f64,
+            ]),
+            19,
+        ),
+        platform in 0..4_usize,
+        position in proptest::option::of((-90.0..90.0_f64, -180.0..180.0_f64)),
+    ) {
+        let platform =
+            [Platform::Land, Platform::Ship, Platform::Buoy, Platform::Aerodrome][platform];
+        let mut report = Report::empty(name("01001"), platform, Form::Csv, start().instant());
+        report.position = position.and_then(|(north, east)| Position::new(north, east));
+        report.station_height_m = values[0];
+        report.barometer_height_m = values[1];
+        report.pressure_station_hpa = values[2];
+        report.pressure_msl_hpa = values[3];
+        report.altimeter_hpa = values[4];
+        report.altimeter_rounding_hpa = values[5].unwrap_or(0.0);
+        report.pressure_change_3h_hpa = values[6];
+        report.pressure_change_24h_hpa = values[7];
+        report.wind_from_deg = values[8];
+        report.wind_speed_m_s = values[9];
+        report.wind_gust_m_s = values[10];
+        report.anemometer_height_m = values[11];
+        report.air_temperature_c = values[12];
+        report.dew_point_c = values[13];
+        report.relative_humidity_percent = values[14];
+        report.sea_temperature_c = values[15];
+        report.speed_m_s = values[16];
+        report.standard_surface = values[17].zip(values[18]).map(|(pressure_hpa, height_gpm)| {
+            crate::report::StandardSurface { pressure_hpa, height_gpm }
+        });
+        for observation in made(&[report], start()) {
+            let wind = observation.wind_m_s.unwrap_or_default();
+            proptest::prop_assert!(wind.0.is_finite() && wind.1.is_finite());
+            proptest::prop_assert!(wind.0.hypot(wind.1) < 150.0);
+            proptest::prop_assert!(observation.wind_error_m_s.is_finite());
+            proptest::prop_assert!(observation.pressure_error_hpa.is_finite());
+            if let Some(pressure) = observation.pressure_msl_hpa {
+                proptest::prop_assert!((870.0..=1085.0).contains(&pressure));
+                proptest::prop_assert!(observation.pressure_error_hpa >= 0.5);
+            }
+        }
+    }
 }
 
 /// The memory of the observer cannot be seen in its answers.
