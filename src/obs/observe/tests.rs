@@ -6,6 +6,8 @@ use crate::obs::{Element, PressureSource, Provenance, Verdict};
 use crate::report::{Form, Report};
 use crate::sphere::Position;
 
+static CATALOGUE: std::sync::LazyLock<Catalogue> = std::sync::LazyLock::new(Catalogue::built_in);
+
 fn start() -> Hour {
     Instant::from_calendar(2026, 1, 15, 12, 0).expect("a time").hour_floor()
 }
@@ -46,8 +48,6 @@ fn made(reports: &[Report], hour: Hour) -> Vec<Arc<Observation>> {
     for report in reports {
         held.insert(*report, provenance(0));
     }
-    static CATALOGUE: std::sync::LazyLock<Catalogue> =
-        std::sync::LazyLock::new(Catalogue::built_in);
     observe(&held, &CATALOGUE, hour..=hour, &ObsSettings::default()).hour(hour).to_vec()
 }
 
