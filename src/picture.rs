@@ -14,6 +14,11 @@ use crate::systems::System;
 use crate::tendency::TendencyRow;
 use crate::winds::{ConvergenceArea, StationWind, WindField};
 
+mod arrivals;
+mod workshop;
+
+pub use workshop::{Inputs, Workshop, picture};
+
 /// The whole result, immutable: screen and paper show it and compute nothing of their own.
 #[derive(Clone, PartialEq, Debug)]
 pub struct Picture {
@@ -31,6 +36,8 @@ pub struct Picture {
     pub wind_fields: Vec<Arc<WindField>>,
     /// Highs and lows: lows first, deepest first, then highs, highest first.
     pub systems: Vec<System>,
+    /// Systems that ended within the window, newest end first.
+    pub ended: Vec<System>,
     /// Winds at watch points and stations.
     pub winds: Vec<StationWind>,
     /// Areas of convergence, strongest first.
@@ -102,6 +109,8 @@ pub struct ArrivalLine {
     pub text: String,
     /// File it came from.
     pub file: String,
+    /// What a decision about the report is kept under; `None` for lines about files.
+    pub decision: Option<String>,
 }
 
 /// The watchkeeper's decisions: part of the fold, kept in the journal.

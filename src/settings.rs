@@ -1,7 +1,14 @@
 //! The configuration, read from TOML and checked once.
 
+use std::collections::BTreeMap;
+
 use serde::{Deserialize, Serialize};
 
+use crate::alert::Thresholds;
+use crate::analysis::AnalysisSettings;
+use crate::instant::Instant;
+use crate::obs::{ObsSettings, Verdict};
+use crate::report::{Identifier, Platform};
 use crate::sphere::Position;
 
 /// Everything that can be set. Every field has a default; an unknown key is an error.
@@ -97,6 +104,54 @@ pub struct AlertSettings {
     pub weak_share: f64,
     /// A program and its arguments run on a new alert; no shell is involved.
     pub command: Vec<String>,
+}
+
+impl Settings {
+    /// The part that the making of observations needs.
+    pub fn obs(&self, overruled: &BTreeMap<String, Verdict>) -> ObsSettings {
+        ObsSettings {
+            station_height_max_m: self.station_height_max_m,
+            overruled: overruled.clone(),
+        }
+    }
+
+    /// The part that the analysis needs; reports ruled sound are safe from the neighbour check.
+    pub fn analysis(&self, overruled: &BTreeMap<String, Verdict>) -> AnalysisSettings {
+        let kept = overruled
+            .iter()
+            .filter(|(_, verdict)| **verdict != Verdict::Refused)
+            .filter_map(|(key, _)| decided(key))
+            .collect();
+        AnalysisSettings {
+            memory_h: self.memory_h,
+            station_height_max_m: self.station_height_max_m,
+            kept,
+            ..AnalysisSettings::default()
+        }
+    }
+
+    /// The part that the alert rules need.
+    pub fn thresholds(&self) -> Thresholds {
+        let alerts = &self.alerts;
+        Thresholds {
+            fall_3h_hpa: alerts.fall_3h_hpa,
+            bergeron: alerts.bergeron,
+            wind_kt: alerts.wind_kt,
+            near_nm: alerts.near_nm,
+            stale_minutes: alerts.stale_minutes,
+            weak_share: alerts.weak_share,
+        }
+    }
+}
+
+/// Platform, station and time of a decision's key (`ship ABCD 2026-01-15T12:00:00Z`).
+fn decided(key: &str) -> Option<(Platform, Identifier, Instant)> {
+    let (platform, rest) = key.split_once(' ')?;
+    let (station, time) = rest.rsplit_once(' ')?;
+    let platform = [Platform::Land, Platform::Ship, Platform::Buoy, Platform::Aerodrome]
+        .into_iter()
+        .find(|one| one.word() == platform)?;
+    Some((platform, Identifier::new(station)?, Instant::parse(time)?))
 }
 
 impl Default for Settings {

@@ -138,8 +138,8 @@ fn age_words(age_s: i64) -> String {
 }
 
 fn weak_share(analysis: &HourAnalysis) -> f64 {
-    let weak = analysis.error_ratio.iter().filter(|ratio| !(**ratio <= ERROR_RATIO_MAX)).count();
-    weak as f64 / analysis.error_ratio.len().max(1) as f64
+    let sound = analysis.error_ratio.iter().filter(|ratio| **ratio <= ERROR_RATIO_MAX).count();
+    1.0 - sound as f64 / analysis.error_ratio.len().max(1) as f64
 }
 
 fn weak_analysis(evidence: &Evidence<'_>, out: &mut Vec<Alert>) {
@@ -450,7 +450,7 @@ fn rapid_falls(evidence: &Evidence<'_>, out: &mut Vec<Alert>) {
             (None, None) => String::new(),
         };
         if falling.len() > NAMED_MAX {
-            found.evidence.push_str(&format!("; {} stations fall so fast", falling.len()));
+            found.evidence += &format!("; {} stations fall so fast", falling.len());
         }
         found.confidence =
             row.change_3h_error_hpa.map(|error| above(-change_hpa, error, limit_hpa));
@@ -488,7 +488,7 @@ fn silent(evidence: &Evidence<'_>, out: &mut Vec<Alert>) {
     found.message = format!("{} regular stations are silent", evidence.silent.len());
     found.evidence = names.join(", ");
     if more > 0 {
-        found.evidence.push_str(&format!(" and {more} more"));
+        found.evidence += &format!(" and {more} more");
     }
     out.push(found);
 }
