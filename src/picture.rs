@@ -12,11 +12,14 @@ use crate::obs::held::FileRecord;
 use crate::obs::{Observation, Verdict};
 use crate::systems::System;
 use crate::tendency::TendencyRow;
+use crate::winds::fields::DragLaw;
 use crate::winds::{ConvergenceArea, StationWind, WindField};
 
 mod arrivals;
+mod point;
 mod workshop;
 
+pub use point::PointValues;
 pub use workshop::{Inputs, Workshop, picture};
 
 /// The whole result, immutable: screen and paper show it and compute nothing of their own.
@@ -51,6 +54,8 @@ pub struct Picture {
     pub observations: Vec<Arc<Observation>>,
     /// What came in and what became of it.
     pub arrivals: Arrivals,
+    /// The drag law, for winds at points.
+    pub law: Arc<DragLaw>,
 }
 
 /// How many reports, and what became of them.

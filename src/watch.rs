@@ -1,1 +1,3 @@
-//! The running watch: event loop, terminal, worker, clock.
+//! The running watch: clock, terminal, encoder, worker and event loop.
+
+pub mod clock;

@@ -450,7 +450,7 @@ fn rapid_falls(evidence: &Evidence<'_>, out: &mut Vec<Alert>) {
             (None, None) => String::new(),
         };
         if falling.len() > NAMED_MAX {
-            found.evidence += &format!("; {} stations fall so fast", falling.len());
+            found.evidence = format!("{}; {} stations fall so fast", found.evidence, falling.len());
         }
         found.confidence =
             row.change_3h_error_hpa.map(|error| above(-change_hpa, error, limit_hpa));
@@ -488,7 +488,7 @@ fn silent(evidence: &Evidence<'_>, out: &mut Vec<Alert>) {
     found.message = format!("{} regular stations are silent", evidence.silent.len());
     found.evidence = names.join(", ");
     if more > 0 {
-        found.evidence += &format!(" and {more} more");
+        found.evidence = format!("{} and {more} more", found.evidence);
     }
     out.push(found);
 }

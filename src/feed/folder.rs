@@ -61,14 +61,23 @@ pub fn look(folder: &Path) -> Result<BTreeMap<String, Stamp>, FolderError> {
         if !about.is_file() {
             continue;
         }
-        let modified = about.modified().unwrap_or(UNIX_EPOCH);
-        let modified_ns = match modified.duration_since(UNIX_EPOCH) {
-            Ok(after) => i128::try_from(after.as_nanos()).unwrap_or(0),
-            Err(before) => -i128::try_from(before.duration().as_nanos()).unwrap_or(0),
-        };
-        seen.insert(name, Stamp { size: about.len(), modified_ns });
+        seen.insert(name, stamp_of(&about));
     }
     Ok(seen)
+}
+
+/// Size and time of modification of a file; `None` where it cannot be looked at.
+pub fn stamp(path: &Path) -> Option<Stamp> {
+    std::fs::metadata(path).ok().map(|about| stamp_of(&about))
+}
+
+fn stamp_of(about: &std::fs::Metadata) -> Stamp {
+    let modified = about.modified().unwrap_or(UNIX_EPOCH);
+    let modified_ns = match modified.duration_since(UNIX_EPOCH) {
+        Ok(after) => i128::try_from(after.as_nanos()).unwrap_or(0),
+        Err(before) => -i128::try_from(before.duration().as_nanos()).unwrap_or(0),
+    };
+    Stamp { size: about.len(), modified_ns }
 }
 
 /// Reads a file of the folder whole, up to [`FILE_BYTES_MAX`].

@@ -19,7 +19,6 @@ use crate::obs::{Catalogue, Held, Observation, Observed, Observer};
 use crate::quantity::m_s_from_kt;
 use crate::settings::Settings;
 use crate::sphere::Position;
-use crate::systems::System;
 use crate::systems::follow::{Followed, HourCentres, Wishes, follow, wind_radius_km};
 use crate::systems::names::NameBook;
 use crate::tendency;
@@ -62,7 +61,7 @@ pub struct Workshop {
     analyses: BTreeMap<Hour, Arc<HourAnalysis>>,
     centres: BTreeMap<Hour, (u64, Arc<HourCentres>)>,
     fields: BTreeMap<Hour, (u64, Arc<WindField>)>,
-    law: DragLaw,
+    law: Arc<DragLaw>,
 }
 
 /// Makes the Picture: the one function that does, and the names that are settled with it.
@@ -160,6 +159,7 @@ impl Workshop {
             alerts,
             observations,
             arrivals,
+            law: Arc::clone(&self.law),
         };
         (picture, followed.names)
     }
@@ -288,21 +288,7 @@ fn region(settings: &Settings, by_hour: &ByHour, valid: Hour) -> Arc<Grid> {
 /// Where the systems were at an hour, and their velocity then, from their tracks.
 fn movers(followed: &Followed, hour: Hour) -> Vec<MovingCentre> {
     let systems = followed.systems.iter().chain(&followed.ended);
-    systems.filter_map(|system| mover(system, hour)).collect()
-}
-
-fn mover(system: &System, hour: Hour) -> Option<MovingCentre> {
-    let at = system.track.iter().position(|point| point.hour == hour)?;
-    let before = system.track.get(at.saturating_sub(1))?;
-    let after = system.track.get(at + 1).or_else(|| system.track.get(at))?;
-    let elapsed_s = after.hour.instant().seconds_since(before.hour.instant()) as f64;
-    let position = system.track.get(at)?.position;
-    if elapsed_s <= 0.0 {
-        return Some(MovingCentre { position, velocity_m_s: [0.0, 0.0] });
-    }
-    let (east_km, north_km) = before.position.offset_to(after.position);
-    let velocity_m_s = [east_km, north_km].map(|part| part * 1000.0 / elapsed_s);
-    Some(MovingCentre { position, velocity_m_s })
+    systems.filter_map(|system| super::point::mover(system, hour)).collect()
 }
 
 fn field_print(

@@ -41,7 +41,7 @@ pub struct MovingCentre {
 }
 
 /// The drag law tabulated for both surfaces: made once, used for every field.
-#[derive(Debug)]
+#[derive(Clone, PartialEq, Debug)]
 pub struct DragLaw {
     sea: Table,
     land: Table,

@@ -87,7 +87,7 @@ pub fn under(
 }
 
 /// Ratio and angle tabulated for whole fields: bilinear in the logarithms of speed and f.
-#[derive(Debug)]
+#[derive(Clone, PartialEq, Debug)]
 pub struct Table {
     rows: Vec<[f64; 2]>,
 }
