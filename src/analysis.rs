@@ -4,19 +4,17 @@
 //! memory about a broad first guess, pressure and sea wind together, in overlapping patches. The
 //! story of an hour: the newest reports ([`site`]) become departures from the first guess
 //! ([`first_guess`], [`friction`]); the statistics of the departures are learnt ([`statistics`]);
-//! a first solution ([`patch`]) judges the reports ([`neighbour`]) and gives the curvature of the
+//! a first solution, on a coarser grid ([`patch`]), judges the reports ([`neighbour`]) and gives the curvature of the
 //! flow; a second one, without the refused, is the analysis. Last comes the observed wind
 //! ([`wind`]). Each hour stands on its own memory: no hour depends on the analysis of another.
 
 use std::collections::{BTreeMap, BTreeSet};
 use std::sync::Arc;
 
-use rayon::prelude::*;
-
 use crate::field::Grid;
 use crate::field::spline::Spline;
 use crate::instant::{Hour, Instant};
-use crate::obs::{Finding, Observation, Verdict};
+use crate::obs::{Finding, Observation};
 use crate::report::{Identifier, Platform};
 use crate::sphere::Position;
 
@@ -28,6 +26,7 @@ pub mod isobar;
 mod neighbour;
 mod patch;
 mod point;
+mod pressure;
 pub mod region;
 mod select;
 mod site;
@@ -123,12 +122,6 @@ impl Default for AnalysisSettings {
     }
 }
 
-/// Sites closer than this, in grid steps, are joined.
-const JOINED_STEPS: f64 = 0.5;
-/// The curvature of the flow is not believed beyond 1 / (150 km) nor taken whole: the analysis that
-/// it comes from is smoother than the truth in lows and less certain elsewhere.
-const CURVATURE_MAX_PER_M: f64 = 1.0 / 150e3;
-
 /// Analyses one hour.
 ///
 /// `observations` by hour, each hour's in canonical order; those of the memory before the hour and
@@ -141,15 +134,11 @@ pub fn analyse(
     settings: &AnalysisSettings,
 ) -> HourAnalysis {
     let used = site::newest(hour, observations, settings);
-    let places: Vec<Position> = (0..grid.len())
-        .into_par_iter()
-        .map(|k| grid.position(k % grid.columns, k / grid.columns))
-        .collect();
-    let ups: Vec<covariance::Vector> =
-        places.par_iter().map(|place| covariance::directions(*place)[0]).collect();
+    let places = pressure::positions(grid);
+    let ups = pressure::ups(&places);
     let latitudes_deg: Vec<f64> = places.iter().map(|place| place.latitude_deg()).collect();
-    let made = Making { grid, places: &places, ups: &ups, used: &used, settings };
-    let pressure = made.pressure();
+    let making = pressure::Making { grid, places: &places, ups: &ups, used: &used, settings };
+    let pressure = making.pressure();
     let wind = if used.iter().any(|used| used.wind) {
         let options = pressure.options.for_wind();
         wind::analyse(grid, &ups, &latitudes_deg, &pressure.field_hpa, &used, &options)
@@ -189,226 +178,4 @@ fn innovations(
             finding: judgement.pressure_finding.or(judgement.wind_finding),
         })
         .collect()
-}
-
-/// What the pressure analysis is made of.
-struct Making<'a> {
-    grid: &'a Grid,
-    places: &'a [Position],
-    ups: &'a [covariance::Vector],
-    used: &'a [site::Used],
-    settings: &'a AnalysisSettings,
-}
-
-/// The pressure analysis.
-struct Pressure {
-    field_hpa: Vec<f64>,
-    error_hpa: Vec<f64>,
-    sigma_hpa: f64,
-    statistics: Statistics,
-    options: patch::Options,
-    judgements: Vec<neighbour::Judgement>,
-    pressures_used: usize,
-}
-
-impl patch::Options {
-    /// For `sites` on a grid, with these statistics.
-    fn fitting(grid: &Grid, sites: usize, statistics: &Statistics) -> Self {
-        let per_point = sites as f64 / grid.len().max(1) as f64;
-        // About a dozen sites to a patch's core, as far as that goes.
-        let step = if per_point > 0.4 {
-            4
-        } else if per_point > 0.05 {
-            5
-        } else {
-            6
-        };
-        Self {
-            step,
-            nearest: 48,
-            elements_max: 110,
-            // Where both covariances have fallen equally far, to second order.
-            km_per_h: 0.775 * statistics.length_km / statistics.time_h,
-            errors: true,
-            left_out: true,
-        }
-    }
-
-    fn for_wind(self) -> Self {
-        Self {
-            nearest: 24,
-            elements_max: 40,
-            km_per_h: 60.0,
-            errors: true,
-            left_out: false,
-            ..self
-        }
-    }
-}
-
-impl Making<'_> {
-    fn pressure(&self) -> Pressure {
-        let none = first_guess::FirstGuess { offset_hpa: 0.0 };
-        let mut friction = friction::Friction::default();
-        let ones = vec![1.0; self.used.len()];
-        let raw = self.sites(none, &friction, &ones);
-        let statistics = Statistics::learnt(&raw, Statistics::default().time_h);
-        let covariance = statistics.covariance();
-        let guess = first_guess::FirstGuess { offset_hpa: statistics.offset_hpa };
-        let single = self.sites(guess, &friction, &ones);
-        let joined = site::superobbed(self.grid, single.clone(), JOINED_STEPS);
-        let options = patch::Options::fitting(self.grid, joined.len(), &statistics);
-        let has_winds = joined.iter().any(|site| site.wind.is_some());
-        let first = patch::Options { errors: false, ..options };
-        let solution = patch::solve(self.grid, self.ups, &joined, &covariance, &first);
-        let kept: Vec<bool> = self
-            .used
-            .iter()
-            .map(|used| self.settings.kept.contains(&used.observation.key()))
-            .collect();
-        let check =
-            |sites: &[site::Site], left_out: &[Option<patch::LeftOut>], single: &[site::Site]| {
-                neighbour::Check {
-                    used: self.used,
-                    single,
-                    sites,
-                    left_out,
-                    covariance: &covariance,
-                    km_per_h: options.km_per_h,
-                    kept: &kept,
-                }
-                .judge()
-            };
-        let judgements = check(&joined, &solution.left_out, &single);
-        if has_winds {
-            friction.curvature_per_m = self.curvatures(guess, &solution);
-        }
-        // The second solution: without the refused, doubtful ones with a larger error.
-        let factors: Vec<f64> = judgements.iter().map(neighbour::Judgement::error_factor).collect();
-        let mut sites = self.sites(guess, &friction, &factors);
-        for site in &mut sites {
-            let judged = |of: &dyn Fn(&neighbour::Judgement) -> bool| {
-                site.members.iter().any(|&member| of(&judgements[member]))
-            };
-            if judged(&neighbour::Judgement::refuses_pressure) {
-                site.scalar = None;
-            }
-            if judged(&|judgement| judgement.wind_finding.is_some()) {
-                site.wind = None;
-            }
-        }
-        sites.retain(|site| site.elements() > 0);
-        let pressures_used = sites.iter().filter(|site| site.scalar.is_some()).count();
-        let joined = site::superobbed(self.grid, sites, JOINED_STEPS);
-        let solution = patch::solve(self.grid, self.ups, &joined, &covariance, &options);
-        let sigma_hpa = covariance.variance().sqrt();
-        let factor = calibration(&joined, &solution.left_out);
-        Pressure {
-            field_hpa: solution
-                .values
-                .iter()
-                .zip(self.places)
-                .map(|(value, place)| value[0] + guess.at(*place).pressure_hpa)
-                .collect(),
-            error_hpa: solution
-                .errors
-                .iter()
-                .map(|error| (error * factor).min(sigma_hpa))
-                .collect(),
-            sigma_hpa,
-            statistics,
-            options,
-            judgements: merged(judgements, &joined, &solution.left_out),
-            pressures_used,
-        }
-    }
-
-    fn sites(
-        &self,
-        guess: first_guess::FirstGuess,
-        friction: &friction::Friction,
-        factors: &[f64],
-    ) -> Vec<site::Site> {
-        let mut sites = site::sites(self.grid, self.used, guess, friction, factors);
-        if !self.settings.use_winds {
-            for site in &mut sites {
-                site.wind = None;
-            }
-            sites.retain(|site| site.elements() > 0);
-        }
-        sites
-    }
-
-    /// Curvature of the isobars of a first solution at each report with a sea wind.
-    fn curvatures(&self, guess: first_guess::FirstGuess, solution: &patch::Solution) -> Vec<f64> {
-        let field: Vec<f64> = solution
-            .values
-            .iter()
-            .zip(self.places)
-            .map(|(value, place)| value[0] + guess.at(*place).pressure_hpa)
-            .collect();
-        let errors = vec![0.0; field.len()];
-        let hour = Hour::from_unix_h(0);
-        let first = HourAnalysis::from_field(hour, Arc::new(self.grid.clone()), field, errors);
-        self.used
-            .par_iter()
-            .map(|used| {
-                if !used.wind || !used.observation.at_sea() {
-                    return 0.0;
-                }
-                let at = first.at(used.observation.position);
-                at.map_or(0.0, |at| {
-                    curvature_per_m(&at).clamp(-CURVATURE_MAX_PER_M, CURVATURE_MAX_PER_M)
-                })
-            })
-            .collect()
-    }
-}
-
-/// Curvature of the isobar through a point, 1/m, positive round low pressure (METHODS WND-3); it
-/// fades where the gradient is too weak to tell.
-fn curvature_per_m(at: &PointAnalysis) -> f64 {
-    let [px, py] = at.gradient_pa_m;
-    let [pxx, pxy, pyy] = at.hessian_pa_m2;
-    let square = px * px + py * py;
-    // 0.3 hPa in 100 km.
-    let weak = 3e-4_f64.powi(2);
-    (pxx * py * py - 2.0 * pxy * px * py + pyy * px * px) / (square + weak).powf(1.5)
-}
-
-/// What the errors must be multiplied with so that the left-out differences are as large as
-/// expected; near one where there are few reports.
-fn calibration(sites: &[site::Site], left_out: &[Option<patch::LeftOut>]) -> f64 {
-    let (mut sum, mut count) = (30.0, 30.0);
-    for (_, left_out) in sites.iter().zip(left_out) {
-        if let Some(([difference, _], variance)) = left_out.and_then(|left_out| left_out.scalar) {
-            // The few that are far off are the neighbour check's affair.
-            sum += (difference * difference / variance).min(9.0);
-            count += 1.0;
-        }
-    }
-    f64::sqrt(sum / count).clamp(0.6, 1.6)
-}
-
-/// The first judgements with the differences of the second solution, for those that it used.
-fn merged(
-    mut judgements: Vec<neighbour::Judgement>,
-    sites: &[site::Site],
-    left_out: &[Option<patch::LeftOut>],
-) -> Vec<neighbour::Judgement> {
-    for (site, left_out) in sites.iter().zip(left_out) {
-        let Some((difference, variance)) = left_out.and_then(|left_out| left_out.scalar) else {
-            continue;
-        };
-        // A joined site's difference is not one report's.
-        if let [member] = site.members[..] {
-            let judgement = &mut judgements[member];
-            let doubted =
-                judgement.pressure_finding.as_ref().is_some_and(|f| f.verdict != Verdict::Sound);
-            if !doubted {
-                judgement.pressure = Some((difference[0], variance));
-            }
-        }
-    }
-    judgements
 }

@@ -101,8 +101,10 @@ fn nearest(nodes: &[usize], place: f64) -> usize {
     (0..nodes.len()).min_by(|&a, &b| gap(a).total_cmp(&gap(b))).unwrap_or_default()
 }
 
-/// From 0 to 1 with two vanishing derivatives at both ends.
+/// From 0 to 1 with two vanishing derivatives at both ends, over the middle three fifths of the way
+/// between two nodes: what lies closer to a node is its patch's alone.
 fn blend(t: f64) -> f64 {
+    let t = ((t - 0.2) / 0.6).clamp(0.0, 1.0);
     t * t * t * (10.0 + t * (6.0 * t - 15.0))
 }
 
@@ -119,7 +121,11 @@ fn weights(nodes: &[usize], node: usize) -> (usize, Vec<f64>) {
             std::cmp::Ordering::Greater => blend(share(nodes[node + 1])),
         }
     };
-    (low, (low..=high).map(weight).collect())
+    // Rounding apart, the blend is symmetric: what is left out here is whole elsewhere.
+    let weighs = |point: &usize| weight(*point) > 1e-12;
+    let first = (low..=centre).find(weighs).unwrap_or(centre);
+    let last = (centre..=high).rev().find(weighs).unwrap_or(centre);
+    (first, (first..=last).map(weight).collect())
 }
 
 #[derive(Default)]
@@ -190,6 +196,7 @@ impl Scratch {
         up: &Vector,
         age_h: f64,
         count: usize,
+        second: bool,
     ) {
         self.versine.clear();
         self.between.clear();
@@ -200,16 +207,47 @@ impl Scratch {
         }));
         self.between.extend(chosen.ages[..count].iter().map(|age| age - age_h));
         for out in [&mut self.value, &mut self.first, &mut self.second] {
-            out.clear();
             out.resize(count, 0.0);
         }
-        covariance.fill(
-            &self.versine,
-            &self.between,
-            &mut self.value,
-            &mut self.first,
-            &mut self.second,
-        );
+        let (value, first) = (&mut self.value[..], &mut self.first[..]);
+        if second {
+            covariance.fill_second(&self.versine, &self.between, value, first, &mut self.second);
+        } else {
+            covariance.fill(&self.versine, &self.between, value, first);
+        }
+    }
+}
+
+/// The solution of a patch, side by side for speed: the analysed scalars are sums over the sites of
+/// value x weight + first x (up . vector).
+#[derive(Default)]
+struct Weights {
+    scalars: [Vec<f64>; 2],
+    vectors: [Vec<f64>; 3],
+    has_wind: bool,
+}
+
+impl Weights {
+    fn new(chosen: &Chosen<'_>, solved: &[Vec<f64>; 2]) -> Self {
+        let mut out = Self::default();
+        for (l, site) in chosen.sites.iter().enumerate() {
+            let mut at = chosen.starts[l];
+            let mut scalars = [0.0; 2];
+            if site.scalar.is_some() {
+                scalars = [solved[0][at], solved[1][at]];
+                at += 1;
+            }
+            for (to, from) in out.scalars.iter_mut().zip(scalars) {
+                to.push(from);
+            }
+            let pair =
+                if site.wind.is_some() { [solved[0][at], solved[0][at + 1]] } else { [0.0; 2] };
+            out.has_wind |= site.wind.is_some();
+            for (k, to) in out.vectors.iter_mut().enumerate() {
+                to.push(site.operators[0][k] * pair[0] + site.operators[1][k] * pair[1]);
+            }
+        }
+        out
     }
 }
 
@@ -256,11 +294,12 @@ impl Worker<'_> {
         }
         factor.factor(1e-6 * self.covariance.variance());
         let solved = [factor.back(factor.row(order)), factor.back(factor.row(order + 1))];
+        let weights = Weights::new(&chosen_sites, &solved);
         let mut values = Vec::with_capacity(count);
         for row in 0..row_weights.len() {
             for column in 0..column_weights.len() {
                 let point = self.grid.index(first_column + column, first_row + row);
-                values.push(self.mean(scratch, &chosen_sites, &self.ups[point], &solved));
+                values.push(self.mean(scratch, &chosen_sites, &self.ups[point], &weights));
             }
         }
         let mut errors = [sigma; 4];
@@ -289,7 +328,7 @@ impl Worker<'_> {
     fn assemble(&self, scratch: &mut Scratch, factor: &mut Factor, chosen: &Chosen<'_>) {
         let order = chosen.order();
         for (k, site) in chosen.sites.iter().enumerate() {
-            scratch.radial(self.covariance, chosen, &site.up, site.age_h, k + 1);
+            scratch.radial(self.covariance, chosen, &site.up, site.age_h, k + 1, true);
             let mut element = chosen.starts[k];
             if let Some(departure) = &site.scalar {
                 let row = factor.row_mut(element);
@@ -340,7 +379,7 @@ impl Worker<'_> {
 
     /// Covariances of the scalar at a place, at the hour, with every unknown.
     fn target(&self, scratch: &mut Scratch, chosen: &Chosen<'_>, up: &Vector, row: &mut [f64]) {
-        scratch.radial(self.covariance, chosen, up, 0.0, chosen.sites.len());
+        scratch.radial(self.covariance, chosen, up, 0.0, chosen.sites.len(), false);
         for (l, other) in chosen.sites.iter().enumerate() {
             let mut at = chosen.starts[l];
             if other.scalar.is_some() {
@@ -360,22 +399,18 @@ impl Worker<'_> {
         scratch: &mut Scratch,
         chosen: &Chosen<'_>,
         up: &Vector,
-        solved: &[Vec<f64>; 2],
+        weights: &Weights,
     ) -> [f64; 2] {
-        scratch.radial(self.covariance, chosen, up, 0.0, chosen.sites.len());
-        let mut sums = [0.0; 2];
-        for (l, other) in chosen.sites.iter().enumerate() {
-            let mut at = chosen.starts[l];
-            if other.scalar.is_some() {
-                sums[0] += scratch.value[l] * solved[0][at];
-                sums[1] += scratch.value[l] * solved[1][at];
-                at += 1;
-            }
-            if other.wind.is_some() {
-                sums[0] += scratch.first[l]
-                    * (dot(up, &other.operators[0]) * solved[0][at]
-                        + dot(up, &other.operators[1]) * solved[0][at + 1]);
-            }
+        scratch.radial(self.covariance, chosen, up, 0.0, chosen.sites.len(), false);
+        let mut sums = weights.scalars.each_ref().map(|part| solve::dot(&scratch.value, part));
+        if weights.has_wind {
+            let [x, y, z] = &weights.vectors;
+            let lean = &mut scratch.versine;
+            lean.clear();
+            lean.extend(
+                x.iter().zip(y).zip(z).map(|((x, y), z)| up[0] * x + up[1] * y + up[2] * z),
+            );
+            sums[0] += solve::dot(&scratch.first, lean);
         }
         sums
     }

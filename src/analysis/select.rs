@@ -11,9 +11,9 @@ use crate::sphere::EARTH_RADIUS_KM;
 /// Directions told apart.
 const OCTANTS: usize = 8;
 /// Sites wanted in each direction, where there are any.
-const PER_OCTANT: usize = 3;
+const PER_OCTANT: usize = 2;
 /// Sites spread over the whole region, from which missing directions are filled.
-const SPREAD_MAX: usize = 150;
+const SPREAD_MAX: usize = 120;
 /// Up to so many sites all are looked at.
 const FEW: usize = 300;
 

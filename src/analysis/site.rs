@@ -57,6 +57,12 @@ impl Site {
         }
     }
 
+    /// The wind towards east that the first guess has here, m/s; it has none towards north.
+    pub(super) fn guess_wind_m_s(&self, guess: FirstGuess) -> f64 {
+        let [_, _, north] = directions(self.position);
+        dot(&self.operators[0], &north) * guess.at(self.position).by_latitude_hpa
+    }
+
     /// Number of unknowns it brings.
     pub(super) fn elements(&self) -> usize {
         usize::from(self.scalar.is_some()) + 2 * usize::from(self.wind.is_some())
@@ -177,8 +183,7 @@ pub(super) fn sites(
                     Some(Departure { values: [pressure_hpa - guess.pressure_hpa, 0.0], error });
             }
             if let Some(wind) = observation.wind_m_s.filter(|_| used.wind && observation.at_sea()) {
-                let [_, _, north] = directions(observation.position);
-                let guess_u = dot(&site.operators[0], &north) * guess.by_latitude_hpa;
+                let guess_u = site.guess_wind_m_s(first_guess);
                 site.wind = friction
                     .geostrophic(index, observation, wind)
                     .map(|([u, v], error)| Departure { values: [u - guess_u, v], error });
@@ -211,6 +216,14 @@ pub(super) fn superobbed(grid: &Grid, sites: Vec<Site>, bin: f64) -> Vec<Site> {
         }
     }
     out
+}
+
+/// The same sites on a grid with another spacing and the same first point.
+pub(super) fn regridded(sites: &[Site], factor: f64) -> Vec<Site> {
+    sites
+        .iter()
+        .map(|site| Site { place: site.place.map(|place| place * factor), ..site.clone() })
+        .collect()
 }
 
 fn joined(grid: &Grid, group: &[Site]) -> Site {

@@ -10,7 +10,7 @@ use std::collections::BTreeMap;
 
 use rayon::prelude::*;
 
-use super::covariance::{Covariance, Term};
+use super::covariance::Covariance;
 use super::site::{Departure, Site};
 use super::solve::{Factor, dot};
 use crate::quantity::whole_below;
@@ -44,25 +44,15 @@ const SIGMA_PRIOR: (f64, f64) = (12.0, 8.0);
 /// Prior spread of the offset of the first guess, hPa.
 const OFFSET_SPREAD_HPA: f64 = 6.0;
 /// Most reports in the likelihood.
-const SPREAD_MAX: usize = 140;
-/// The smaller term: its standard deviation as a share of the larger, its length, and its time.
+const SPREAD_MAX: usize = 110;
+/// Standard deviation of the smaller term as a share of the larger.
 const SMALL_SHARE: f64 = 0.10;
-const SMALL_LENGTH_KM: f64 = 350.0;
-const SMALL_TIME_SHARE: f64 = 0.4;
 
 impl Statistics {
     /// The covariance that these statistics describe.
     pub(super) fn covariance(&self) -> Covariance {
-        Covariance {
-            terms: [
-                Term::new(self.sigma_hpa, self.length_km, self.time_h),
-                Term::new(
-                    SMALL_SHARE * self.sigma_hpa,
-                    SMALL_LENGTH_KM.min(self.length_km),
-                    SMALL_TIME_SHARE * self.time_h,
-                ),
-            ],
-        }
+        let sigmas = [self.sigma_hpa, SMALL_SHARE * self.sigma_hpa];
+        Covariance::new(sigmas, self.length_km, self.time_h)
     }
 
     /// Learns from sites whose departures are from the first guess without offset.

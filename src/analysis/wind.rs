@@ -8,7 +8,7 @@
 
 use rayon::prelude::*;
 
-use super::covariance::{Covariance, Term, Vector, coupling};
+use super::covariance::{Covariance, Vector, coupling};
 use super::patch::{self, Options};
 use super::site::{Departure, Site, Used, superobbed};
 use crate::field::Grid;
@@ -157,9 +157,7 @@ pub(super) fn analyse(
             })
         })
         .collect();
-    let covariance = Covariance {
-        terms: [Term::new(0.9 * sigma, LENGTH_KM, TIME_H), Term::new(0.436 * sigma, 180.0, 3.0)],
-    };
+    let covariance = Covariance::new([0.9 * sigma, 0.436 * sigma], LENGTH_KM, TIME_H);
     let solution = patch::solve(grid, ups, &sites, &covariance, options);
     let total = covariance.variance().sqrt();
     let mut out = WindAnalysis::none(grid.len());
