@@ -71,8 +71,9 @@ pub struct Innovation {
 
 /// One hour's analysis on the grid.
 ///
-/// Dense fields are row-major on `grid`; they may hold NaN where the analysis says nothing.
-#[derive(Clone, PartialEq, Debug)]
+/// Dense fields are row-major on `grid`; they may hold NaN where the analysis says nothing. Two
+/// analyses are equal where they are equal bit for bit, so that NaN equals itself.
+#[derive(Clone, Debug)]
 pub struct HourAnalysis {
     /// The hour it is valid for.
     pub hour: Hour,
@@ -101,6 +102,26 @@ pub struct HourAnalysis {
     pub statistics: Statistics,
     /// The smooth surface through the pressures, for [`HourAnalysis::at`].
     surface: Spline,
+}
+
+impl PartialEq for HourAnalysis {
+    fn eq(&self, other: &Self) -> bool {
+        let same = |a: &[f64], b: &[f64]| {
+            a.len() == b.len() && a.iter().zip(b).all(|(a, b)| a.to_bits() == b.to_bits())
+        };
+        self.hour == other.hour
+            && self.fingerprint == other.fingerprint
+            && self.grid == other.grid
+            && self.pressures_used == other.pressures_used
+            && self.winds_used == other.winds_used
+            && self.statistics == other.statistics
+            && same(&self.pressure_hpa, &other.pressure_hpa)
+            && same(&self.pressure_error_hpa, &other.pressure_error_hpa)
+            && same(&self.error_ratio, &other.error_ratio)
+            && same(self.wind_m_s.as_flattened(), other.wind_m_s.as_flattened())
+            && same(&self.wind_error_m_s, &other.wind_error_m_s)
+            && self.innovations == other.innovations
+    }
 }
 
 /// What can be set of an analysis.

@@ -13,6 +13,7 @@ import gzip
 import io
 import math
 import sys
+import zlib
 from pathlib import Path
 
 import numpy as np
@@ -127,13 +128,106 @@ def january(rows, results):
             a = np.array([[m[0], m[1], m[3]] for m in made])
             t = np.array([[x[0], x[1], x[2], x[3]] for x in truth], float)
             sea = t[:, 3] == 0
-            for smoothing in (0.0, 0.0001, 0.001, 0.01):
+            for smoothing in SMOOTHINGS:
                 found = thin_plate(a[:, 0], a[:, 1], a[:, 2], t[:, 0], t[:, 1], smoothing)
                 e = found - t[:, 2]
                 rms = lambda x: math.sqrt(float(np.mean(x * x)))
                 results.append(["january", hour, count, f"thin plate, 50 neighbours, smoothing {smoothing:g}",
                                 f"{rms(e):.4f}", f"{rms(e[sea]):.4f}"])
     return
+
+
+SMOOTHINGS = (0.0, 0.0001, 0.001, 0.01, 0.1)
+
+
+def gross(rows):
+    """Rows (latitude, longitude, pressure) that are more than 8 hPa from the median of their 6 nearest."""
+    x = unit(np.array([r[0] for r in rows]), np.array([r[1] for r in rows]))
+    p = np.array([r[2] for r in rows])
+    out = []
+    for k in range(len(rows)):
+        near = np.argsort(-(x @ x[k]))[1:7]
+        out.append(abs(p[k] - np.median(p[near])) > 8.0)
+    return out
+
+
+def withheld(case, hour, rows, held, used, results):
+    """rows: (latitude, longitude, pressure); gross ones are kept from the reference altogether."""
+    a = np.array([r for r, u in zip(rows, used) if u])
+    t = np.array([r for r, h in zip(rows, held) if h])
+    for smoothing in SMOOTHINGS:
+        e = thin_plate(a[:, 0], a[:, 1], a[:, 2], t[:, 0], t[:, 1], smoothing) - t[:, 2]
+        r = math.sqrt(float(np.mean(e * e)))
+        results.append([case, hour, len(a), f"thin plate, 50 neighbours, smoothing {smoothing:g}", f"{r:.4f}", ""])
+
+
+def world(rows, results):
+    """2018-11-02 12Z, one in ten stations withheld, five folds, three regions."""
+    regions = {"rich": (36, 62, -12, 32), "middling": (20, 60, 60, 140), "poor": (-60, -5, -82, -30)}
+    seen = {}
+    with gzip.open(DATA / "truth/perf_synop.csv.gz", "rt") as file:
+        for row in csv.DictReader(file):
+            try:
+                lat, lon, high = float(row["latitude"]), float(row["longitude"]), float(row["heightOfStation"])
+                p = float(row["pressureReducedToMeanSeaLevel"]) / 100.0
+            except ValueError:
+                continue
+            if not (870 < p < 1085 and high < 1000 and abs(lat) <= 90):
+                continue
+            station = f"{int(row['blockNumber']):02d}{int(row['stationNumber']):03d}"
+            try:
+                d, f = math.radians(float(row["windDirectionAt10M"])), float(row["windSpeedAt10M"])
+                wind = (-f * math.sin(d), -f * math.cos(d)) if f < 60 else None
+            except ValueError:
+                wind = None
+            seen.setdefault(station, (lat, lon, p, high, wind))
+    for name, (south, north, west, east) in regions.items():
+        chosen = {k: v for k, v in sorted(seen.items()) if south <= v[0] <= north and west <= v[1] <= east}
+        bad = gross(list(chosen.values()))
+        for (station, (lat, lon, p, high, wind)), wrong in zip(chosen.items(), bad):
+            rows.append([name, "2018-11-02T12:00Z", station, lat, lon, high, f"{p:.1f}",
+                         f"{wind[0]:.2f}" if wind else "", f"{wind[1]:.2f}" if wind else "",
+                         zlib.crc32(station.encode()) % 100, int(wrong)])
+        for fold in range(5):
+            held = [zlib.crc32(k.encode()) % 10 == fold and not w for k, w in zip(chosen, bad)]
+            used = [zlib.crc32(k.encode()) % 10 != fold and not w for k, w in zip(chosen, bad)]
+            withheld(name, f"fold {fold}", [v[:3] for v in chosen.values()], held, used, results)
+
+
+def hourly(rows, results):
+    """18 March 1995, North America, four hours, of which the last is judged."""
+    hours = {h: {} for h in (15, 16, 17, 18)}
+    with gzip.open(DATA / "truth/hourly_stations_19950318.csv.gz", "rt") as file:
+        for row in csv.DictReader(file):
+            if row["a_0200"] == "5" or not row["PSL_hPa"] or "1995 03 18" not in row["time"]:
+                continue
+            try:
+                lat, lon, p, high = (float(row[k]) for k in ("lat", "lon", "PSL_hPa", "elev_m"))
+            except ValueError:
+                continue
+            clock = row["time"].split()[3]
+            minute = int(clock[:2]) * 60 + int(clock[3:5])
+            hour = (minute + 30) // 60
+            if hour not in hours or not (870 < p < 1085 and high < 1000 and 20 < lat < 65 and -140 < lon < -50):
+                continue
+            wind = None
+            if row["DIR"] and row["SPD_ms"]:
+                d, f = math.radians(float(row["DIR"])), float(row["SPD_ms"])
+                wind = (-f * math.sin(d), -f * math.cos(d))
+            hours[hour].setdefault(row["id"], (lat, lon, p, high, wind, minute))
+    for hour, stations in hours.items():
+        chosen = dict(sorted(stations.items()))
+        bad = gross(list(chosen.values()))
+        for (station, (lat, lon, p, high, wind, minute)), wrong in zip(chosen.items(), bad):
+            rows.append(["hourly", f"1995-03-18T{minute // 60:02d}:{minute % 60:02d}Z", station, lat, lon, high,
+                         f"{p:.1f}", f"{wind[0]:.2f}" if wind else "", f"{wind[1]:.2f}" if wind else "",
+                         zlib.crc32(station.encode()) % 100, int(wrong)])
+        if hour == 18:
+            part = [zlib.crc32(k.encode()) % 100 for k in chosen]
+            for name, take in (("all", lambda c: c % 10 != 0), ("sparse", lambda c: c % 10 != 0 and c < 14)):
+                held = [c % 10 == 0 and not w for c, w in zip(part, bad)]
+                used = [take(c) and not w for c, w in zip(part, bad)]
+                withheld("hourly", name, [v[:3] for v in chosen.values()], held, used, results)
 
 
 def write(name, header, rows):
@@ -156,6 +250,12 @@ def main():
           [[hour, lats[j], lons[i], int(not is_land(lats[j], lons[i])), f"{p[hour][j, i]:.2f}"]
            for hour in ["1996-01-07T06:00Z", "1996-01-07T18:00Z", "1996-01-08T06:00Z", "1996-01-08T18:00Z"]
            for j in range(len(lats)) for i in range(len(lons)) if np.isfinite(p[hour][j, i])])
+    stations = []
+    world(stations, results)
+    hourly(stations, results)
+    write("analysis_stations.csv.gz",
+          ["case", "time", "station", "latitude_deg", "longitude_deg", "height_m", "pressure_hpa", "u_m_s", "v_m_s",
+           "part", "gross"], stations)
     with (OUT / "analysis_reference.csv").open("w", newline="") as file:
         out = csv.writer(file, lineterminator="\n")
         out.writerow([f"# scipy {scipy.__version__}, numpy {np.__version__}; RMSE in hPa"])
