@@ -27,6 +27,8 @@ const COARSER: usize = 2;
 /// The curvature of the flow is not believed beyond 1 / (150 km): the analysis that it comes from
 /// is not certain enough.
 const CURVATURE_MAX_PER_M: f64 = 1.0 / 150e3;
+/// How many pressures must speak before their errors are moved half way.
+const UNEXPLAINED_WEIGHT: f64 = 20.0;
 
 /// What the pressure analysis is made of.
 pub(super) struct Making<'a> {
@@ -148,7 +150,9 @@ impl Making<'_> {
             friction.learnt = Learnt::from_winds(&left_out_winds(&joined, &first, guess));
         }
         // The second solution: without the refused, doubtful ones with a larger error.
-        let factors: Vec<f64> = judgements.iter().map(Judgement::error_factor).collect();
+        let unexplained = unexplained(&joined, &first.left_out);
+        let factors: Vec<f64> =
+            judgements.iter().map(|judgement| unexplained * judgement.error_factor()).collect();
         let mut sites = self.sites(guess, &friction, &factors);
         for site in &mut sites {
             let judged = |of: &dyn Fn(&Judgement) -> bool| {
@@ -260,6 +264,29 @@ fn curvature_per_m(at: &PointAnalysis) -> f64 {
     // 0.3 hPa in 100 km.
     let weak = 3e-4_f64.powi(2);
     (pxx * py * py - 2.0 * pxy * px * py + pyy * px * px) / (square + weak).powf(1.5)
+}
+
+/// What the observation errors of the pressures must be multiplied with so that the left-out
+/// differences are as large as expected: what a dense network shows beyond its barometers' errors
+/// (hills, sea breezes, the hour's weather) is not the analysis's to follow.
+fn unexplained(sites: &[Site], left_out: &[Option<LeftOut>]) -> f64 {
+    let (mut excess, mut errors, mut count) = (0.0, 0.0, 0.0);
+    for (site, left_out) in sites.iter().zip(left_out) {
+        let found = left_out.as_ref().and_then(|left_out| left_out.scalar);
+        if let (Some(departure), Some(([difference, _], variance))) = (site.scalar, found) {
+            // Only where the error weighs: elsewhere the weather's spread is what is seen.
+            let share = departure.error * departure.error / variance;
+            let square = (difference * difference).min(12.0 * variance);
+            excess += share * (square - variance);
+            errors += share * departure.error * departure.error;
+            count += share;
+        }
+    }
+    if count < 1.0 {
+        return 1.0;
+    }
+    let square: f64 = 1.0 + excess / errors * (count / (count + UNEXPLAINED_WEIGHT));
+    square.clamp(1.0, 4.0).sqrt()
 }
 
 /// What the errors must be multiplied with so that the left-out differences are as large as
