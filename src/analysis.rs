@@ -157,12 +157,10 @@ pub fn analyse(
     let used = site::newest(hour, observations, settings);
     let places = pressure::positions(grid);
     let ups = pressure::ups(&places);
-    let latitudes_deg: Vec<f64> = places.iter().map(|place| place.latitude_deg()).collect();
     let making = pressure::Making { grid, places: &places, ups: &ups, used: &used, settings };
     let pressure = making.pressure();
     let wind = if used.iter().any(|used| used.wind) {
-        let options = pressure.options.for_wind();
-        wind::analyse(grid, &ups, &latitudes_deg, &pressure.field_hpa, &used, &options)
+        wind::analyse(grid, &places, &pressure.field_hpa, &used)
     } else {
         wind::WindAnalysis::none(grid.len())
     };

@@ -59,7 +59,8 @@ impl Covariance {
     /// For a cosine given as 1 - C, and the time between two reports, h.
     #[inline]
     pub(super) fn between(&self, versine: f64, between_h: f64) -> Radial {
-        let x = self.rate * (2.0 * versine).sqrt();
+        // Rounding may leave a place a hair's breadth beyond itself.
+        let x = self.rate * (if versine > 0.0 { 2.0 * versine } else { 0.0 }).sqrt();
         let t = self.rate_per_h * between_h.abs();
         let e = decay(x + t);
         let (xs, ts) = (SMALLER * x, SMALLER * t);

@@ -27,6 +27,9 @@ const NEIGHBOURS: usize = 24;
 /// [`EXPLODING_HPA`].
 const SUPPORTING_FALL_HPA: f64 = 3.0;
 const EXPLODING_HPA: f64 = 15.0;
+/// Two reports within this distance (age counted in) support each other up to so many hPa.
+const SUPPORT_KM: f64 = 300.0;
+const SUPPORTED_HPA: f64 = 25.0;
 /// Wind: expected standard deviations from which it is not used for the pressure.
 const WIND_REFUSED: f64 = 4.5;
 
@@ -306,6 +309,10 @@ impl Check<'_> {
         }
         let Some(neighbours) = self.neighbours(one.report, own, accused) else { return false };
         let (means, [v_a, v_b, shared]) = expected(self.covariance, [a, b], &neighbours);
+        let differences = [y_a.values[0] - means[0], y_b.values[0] - means[1]];
+        if agree(differences, self.gap(a, b).sqrt()) {
+            return true;
+        }
         let correlation = shared / (v_a * v_b).sqrt().max(1e-9);
         if correlation < 0.3 {
             return false;
@@ -331,6 +338,16 @@ fn judge_wind(site: &Site, left_out: &LeftOut, out: &mut [Judgement]) {
             out[report].wind_finding = Some(finding(Element::Wind, Verdict::Doubtful, reason));
         }
     }
+}
+
+/// Whether two differences, hPa, so many km apart, tell of the same thing. The weather has more
+/// extremes than a normal distribution, two independent errors seldom agree (own rule).
+fn agree([one, other]: [f64; 2], apart_km: f64) -> bool {
+    let larger = one.abs().max(other.abs());
+    one * other > 0.0
+        && apart_km < SUPPORT_KM
+        && (one - other).abs() < (0.35 * larger).max(3.0)
+        && larger < SUPPORTED_HPA
 }
 
 fn error(own: &[Option<&Site>], report: usize) -> f64 {

@@ -23,7 +23,7 @@ use crate::sphere::Position;
 const JOINED_STEPS: [f64; 2] = [0.5, 1.0];
 const CROWDED: f64 = 0.45;
 /// The first solution is made on a grid so many times coarser.
-const COARSER: usize = 2;
+pub(super) const COARSER: usize = 2;
 /// The curvature of the flow is not believed beyond 1 / (150 km): the analysis that it comes from
 /// is not certain enough.
 const CURVATURE_MAX_PER_M: f64 = 1.0 / 150e3;
@@ -45,7 +45,6 @@ pub(super) struct Pressure {
     pub(super) error_hpa: Vec<f64>,
     pub(super) sigma_hpa: f64,
     pub(super) statistics: Statistics,
-    pub(super) options: Options,
     pub(super) judgements: Vec<Judgement>,
     pub(super) pressures_used: usize,
 }
@@ -71,18 +70,18 @@ impl Options {
     fn first(self, coarse: &Grid, sites: usize) -> Self {
         let points = 16.0 * coarse.len() as f64 / sites.max(1) as f64;
         let step = index_nearest(points.sqrt()).clamp(2, 6);
-        Self { step, errors: false, left_out: true, ..self }
+        Self { step, nearest: 32, elements_max: 64, errors: false, left_out: true, ..self }
     }
 
-    /// For the observed wind.
-    pub(super) fn for_wind(self) -> Self {
+    /// For the observed wind, on the coarse grid.
+    pub(super) const fn for_wind() -> Self {
         let (errors, left_out) = (true, false);
-        Self { nearest: 24, elements_max: 40, km_per_h: 60.0, errors, left_out, ..self }
+        Self { step: 3, nearest: 24, elements_max: 40, km_per_h: 60.0, errors, left_out }
     }
 }
 
 /// The same part of the world with a coarser mesh that reaches at least as far.
-fn coarser(grid: &Grid) -> Grid {
+pub(super) fn coarser(grid: &Grid) -> Grid {
     let reach = |count: usize| ((count - 1).div_ceil(COARSER) + 1).max(2);
     Grid {
         spacing_m: grid.spacing_m * COARSER as f64,
@@ -144,13 +143,15 @@ impl Making<'_> {
             kept: &kept,
         }
         .judge();
+        // Where winds speak too, what does not fit is put down to them.
+        let winds = joined.iter().any(|site| site.wind.is_some());
+        let unexplained = if winds { 1.0 } else { unexplained(&joined, &first.left_out) };
         let refused = judgements.iter().any(Judgement::refuses_pressure);
-        if joined.iter().any(|site| site.wind.is_some()) {
+        if winds {
             friction.curvature_per_m = self.curvatures(&coarse, &coarse_places, guess, &first);
             friction.learnt = Learnt::from_winds(&left_out_winds(&joined, &first, guess));
         }
         // The second solution: without the refused, doubtful ones with a larger error.
-        let unexplained = unexplained(&joined, &first.left_out);
         let factors: Vec<f64> =
             judgements.iter().map(|judgement| unexplained * judgement.error_factor()).collect();
         let mut sites = self.sites(guess, &friction, &factors);
@@ -189,7 +190,6 @@ impl Making<'_> {
                 .collect(),
             sigma_hpa,
             statistics,
-            options,
             judgements: merged(judgements, last_sites, last),
             pressures_used,
         }

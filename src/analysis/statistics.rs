@@ -46,7 +46,7 @@ const OFFSET_SPREAD_HPA: f64 = 6.0;
 /// Most reports in the likelihood.
 const SPREAD_MAX: usize = 110;
 /// Standard deviation of the smaller term as a share of the larger.
-const SMALL_SHARE: f64 = 0.10;
+const SMALL_SHARE: f64 = 0.20;
 
 impl Statistics {
     /// The covariance that these statistics describe.

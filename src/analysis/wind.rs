@@ -8,11 +8,14 @@
 
 use rayon::prelude::*;
 
-use super::covariance::{Covariance, Vector, coupling};
+use super::covariance::{Covariance, coupling};
 use super::patch::{self, Options};
-use super::site::{Departure, Site, Used, superobbed};
+use super::pressure::{COARSER, coarser, positions, ups};
+use super::site::{Departure, Site, Used, regridded, superobbed};
 use crate::field::Grid;
+use crate::field::spline::Spline;
 use crate::quantity::{coriolis_per_s, index_nearest};
+use crate::sphere::Position;
 
 /// Scales of the differences of observed from expected winds.
 const LENGTH_KM: f64 = 420.0;
@@ -44,7 +47,7 @@ fn times(a: [f64; 2], b: [f64; 2]) -> [f64; 2] {
 }
 
 /// The geostrophic wind of a field along the map's axes, m/s, damped towards the equator.
-fn geostrophic(grid: &Grid, latitudes_deg: &[f64], pressure_hpa: &[f64]) -> Vec<[f64; 2]> {
+fn geostrophic(grid: &Grid, places: &[Position], pressure_hpa: &[f64]) -> Vec<[f64; 2]> {
     (0..grid.len())
         .into_par_iter()
         .map(|point| {
@@ -54,7 +57,7 @@ fn geostrophic(grid: &Grid, latitudes_deg: &[f64], pressure_hpa: &[f64]) -> Vec<
             };
             let (left, right) = (column.saturating_sub(1), (column + 1).min(grid.columns - 1));
             let (low, high) = (row.saturating_sub(1), (row + 1).min(grid.rows - 1));
-            let latitude_deg = latitudes_deg[point];
+            let latitude_deg = places[point].latitude_deg();
             let coriolis = coriolis_per_s(latitude_deg);
             if coriolis == 0.0 {
                 return [0.0; 2];
@@ -85,13 +88,11 @@ struct Seen {
 /// Analyses the observed winds of the hour.
 pub(super) fn analyse(
     grid: &Grid,
-    ups: &[Vector],
-    latitudes_deg: &[f64],
+    places: &[Position],
     pressure_hpa: &[f64],
     used: &[Used],
-    options: &Options,
 ) -> WindAnalysis {
-    let field = geostrophic(grid, latitudes_deg, pressure_hpa);
+    let field = geostrophic(grid, places, pressure_hpa);
     let parts: [Vec<f64>; 2] = std::array::from_fn(|k| field.iter().map(|wind| wind[k]).collect());
     let seen: Vec<Seen> = used
         .iter()
@@ -158,20 +159,31 @@ pub(super) fn analyse(
         })
         .collect();
     let covariance = Covariance::new([0.9 * sigma, 0.436 * sigma], LENGTH_KM, TIME_H);
-    let solution = patch::solve(grid, ups, &sites, &covariance, options);
+    // The differences are smooth: they are analysed on a coarser grid and carried over.
+    let coarse = coarser(grid);
+    let ups = ups(&positions(&coarse));
+    let sites = regridded(&sites, 1.0 / COARSER as f64);
+    let solution = patch::solve(&coarse, &ups, &sites, &covariance, &Options::for_wind());
+    let surfaces: [Spline; 2] = std::array::from_fn(|k| {
+        let part: Vec<f64> = solution.values.iter().map(|value| value[k]).collect();
+        Spline::through(&part, coarse.columns, coarse.rows)
+    });
     let total = covariance.variance().sqrt();
     let mut out = WindAnalysis::none(grid.len());
     for point in 0..grid.len() {
-        let error = solution.errors[point];
+        let [x, y] =
+            [point % grid.columns, point / grid.columns].map(|k| k as f64 / COARSER as f64);
+        let Some(error) = coarse.sample_at(&solution.errors, x, y) else { continue };
         if error > FAR * total {
             continue;
         }
         let (column, row) = (point % grid.columns, point / grid.columns);
         let land = share.at([column as f64, row as f64]);
-        let sign = if latitudes_deg[point] < 0.0 { -1.0 } else { 1.0 };
+        let sign = if places[point].latitude_deg() < 0.0 { -1.0 } else { 1.0 };
         let guess = expected(field[point], sign, land);
-        let [x, y] = [guess[0] + solution.values[point][0], guess[1] + solution.values[point][1]];
-        let longitude_deg = grid.position(column, row).longitude_deg();
+        let found: [f64; 2] = std::array::from_fn(|k| guess[k] + surfaces[k].at(x, y).value);
+        let [x, y] = found;
+        let longitude_deg = places[point].longitude_deg();
         let (east, north) = grid.projection.to_earth_components(longitude_deg, x, y);
         out.wind_m_s[point] = [east, north];
         out.error_m_s[point] = error;

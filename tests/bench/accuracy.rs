@@ -180,15 +180,12 @@ fn january() {
 /// three hours of memory, all stations and one in eight.
 fn stations() {
     println!("accuracy: withheld stations; RMSE in hPa");
-    println!("  case                 ours   thin plate  smoothed best   ratio   normalised   refused");
+    println!(
+        "  case                 ours   thin plate  smoothed best   ratio   normalised   refused"
+    );
     let rows = table("analysis_stations.csv.gz");
     let reference = table("analysis_reference.csv");
-    for (case, parts) in [
-        ("rich", 5_u32),
-        ("middling", 5),
-        ("poor", 5),
-        ("hourly", 2),
-    ] {
+    for (case, parts) in [("rich", 5_u32), ("middling", 5), ("poor", 5), ("hourly", 2)] {
         let mut sums = [0.0; 5];
         for fold in 0..parts {
             let name = match (case, fold) {

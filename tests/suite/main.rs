@@ -1,4 +1,5 @@
 //! The suite: one binary, so that it is linked once and runs in parallel.
+mod analysis_hour;
 mod checks;
 mod hostile;
 mod house;
