@@ -101,12 +101,14 @@ pub(super) fn picture_at(place: Where) -> Picture {
         hours,
         wind_fields,
         systems: systems(place),
+        ended: Vec::new(),
         winds: station_winds(place),
         convergence: convergence(place),
         tendencies: tendencies(place),
         alerts: alerts(place),
         observations: observations(place),
         arrivals: arrivals(),
+        law: Arc::default(),
     }
 }
 
@@ -548,6 +550,7 @@ fn arrivals() -> Arrivals {
         verdict,
         text: text.to_owned(),
         file: format!("A_SN{minutes:02}QGKS151200_C_QGKS.txt"),
+        decision: None,
     };
     let mut lines = vec![
         line(22, "SKELF", "ship", Verdict::Sound, ""),

@@ -54,7 +54,7 @@ fn provenance(step: i64) -> Provenance {
 }
 
 /// Measures and reports.
-pub fn run() {
+pub(crate) fn run() {
     let reports = world_hour();
     let hour = Instant::from_unix_s(1_541_160_000).hour_floor();
     let newest = hour.plus(71);

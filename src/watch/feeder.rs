@@ -1,0 +1,120 @@
+//! Watches the folder on a thread of its own: the system's word wakes it, and it looks for itself.
+
+use std::collections::BTreeSet;
+use std::path::{Path, PathBuf};
+use std::sync::mpsc::{Receiver, RecvTimeoutError, Sender, channel};
+use std::time::Duration;
+
+use notify::event::{AccessKind, AccessMode, EventKind, ModifyKind, RenameMode};
+use notify::{RecursiveMode, Watcher as _};
+use rayon::prelude::*;
+
+use super::clock;
+use super::worker::Task;
+use crate::feed::batch::unreadable;
+use crate::feed::completeness::Watchlist;
+use crate::feed::folder::{look, read};
+use crate::feed::intake::{ReadFile, read_file};
+use crate::feed::received::received;
+use crate::instant::Instant;
+
+/// Between looks where the system sends no word, or where files wait to be complete.
+const POLL: Duration = Duration::from_secs(2);
+/// Between looks where it does: word can be lost.
+const RESCAN: Duration = Duration::from_secs(60);
+/// After word came, a moment for more of it.
+const GATHER: Duration = Duration::from_millis(20);
+
+/// What wakes the feeder.
+enum Wake {
+    /// A file was closed after writing, or moved in: it is complete.
+    Finished(String),
+    /// Something happened.
+    Something,
+}
+
+/// Watches `folder` until nobody listens. `limit` gives the latest time of receipt: the watch's
+/// own clock, which in a rehearsal is not the system's.
+pub fn run(folder: &Path, poll: bool, limit: &dyn Fn() -> Instant, out: &Sender<Task>) {
+    let (wake, woken) = channel();
+    let mut watcher = if poll { None } else { arm(folder, &wake) };
+    let mut list = Watchlist::new();
+    let mut finished: BTreeSet<String> = BTreeSet::new();
+    loop {
+        let seen = look(folder);
+        if let Ok(seen) = &seen {
+            if watcher.is_none() && !poll {
+                watcher = arm(folder, &wake);
+            }
+            let ready = list.look(seen, &|name| finished.contains(name), clock::now());
+            finished.clear();
+            let files: Vec<(&String, Instant)> = ready
+                .iter()
+                .filter_map(|name| {
+                    let stamp = seen.get(name)?;
+                    Some((name, received(name, stamp.modified(), Some(limit()))))
+                })
+                .collect();
+            let read: Vec<ReadFile> = files
+                .par_iter()
+                .map(|(name, received)| match read(folder, name) {
+                    Ok(bytes) => read_file(name, &bytes, *received),
+                    Err(error) => unreadable(name, *received, &error),
+                })
+                .collect();
+            if !read.is_empty() && out.send(Task::Files(read)).is_err() {
+                return;
+            }
+        } else {
+            // The folder is gone: its watch is too. It is armed again when the folder returns.
+            watcher = None;
+        }
+        let patience = if watcher.is_none() || list.waits() { POLL } else { RESCAN };
+        if !wait(&woken, patience, &mut finished) {
+            return;
+        }
+    }
+}
+
+/// Waits for word or for `patience`; false where the senders are gone.
+fn wait(woken: &Receiver<Wake>, patience: Duration, finished: &mut BTreeSet<String>) -> bool {
+    let mut patience = patience;
+    loop {
+        match woken.recv_timeout(patience) {
+            Ok(Wake::Finished(name)) => {
+                finished.insert(name);
+            }
+            Ok(Wake::Something) => {}
+            Err(RecvTimeoutError::Timeout) => return true,
+            Err(RecvTimeoutError::Disconnected) => return false,
+        }
+        patience = GATHER;
+    }
+}
+
+/// Asks the system for word of the folder; `None` where it will not give any.
+fn arm(folder: &Path, wake: &Sender<Wake>) -> Option<notify::RecommendedWatcher> {
+    let wake = wake.clone();
+    let mut watcher = notify::recommended_watcher(move |event: notify::Result<notify::Event>| {
+        let Ok(event) = event else {
+            let _ = wake.send(Wake::Something);
+            return;
+        };
+        match event.kind {
+            EventKind::Access(AccessKind::Close(AccessMode::Write))
+            | EventKind::Modify(ModifyKind::Name(RenameMode::To | RenameMode::Both)) => {
+                for name in event.paths.iter().filter_map(|path: &PathBuf| path.file_name()) {
+                    let _ = wake.send(Wake::Finished(name.to_string_lossy().into_owned()));
+                }
+            }
+            // Our own reading makes these.
+            EventKind::Access(_) => {}
+            _ => {
+                let _ = wake.send(Wake::Something);
+            }
+        }
+    })
+    .ok()?;
+    watcher.watch(folder, RecursiveMode::NonRecursive).ok()?;
+    Some(watcher)
+}
