@@ -7,20 +7,20 @@ use std::collections::BTreeMap;
 use super::{Alert, Rule, Urgency};
 use crate::analysis::HourAnalysis;
 use crate::instant::{HOUR_S, Hour, Instant};
-use crate::quantity::{kt_from_m_s, nm_from_km};
+use crate::obs::Observation;
+use crate::quantity::nm_from_km;
 use crate::sphere::Position;
 use crate::systems::rating::bergeron_of;
 use crate::systems::{Kind, System};
 use crate::tendency::TendencyRow;
-use crate::winds::beaufort::warning_class;
 use crate::winds::{StationWind, WindField};
+
+mod gale;
 
 /// Share of a threshold at which an alert goes off again.
 const OFF_SHARE: f64 = 0.9;
 /// Above this ratio of the analysis error to that of the first guess nothing is trusted (ANA-5).
 const ERROR_RATIO_MAX: f64 = 0.7;
-/// A strong wind belongs to the nearest low within this, km.
-const LOW_REACH_KM: f64 = 1500.0;
 /// Hours for which a system counts as new.
 const NEW_H: i64 = 3;
 /// Most stations named one by one by a rule.
@@ -60,6 +60,8 @@ pub struct Evidence<'e> {
     pub wind_fields: &'e [std::sync::Arc<WindField>],
     /// Winds at stations.
     pub winds: &'e [StationWind],
+    /// Observations of the window, ascending in time for each station.
+    pub observations: &'e [std::sync::Arc<Observation>],
     /// The tendency table.
     pub tendencies: &'e [TendencyRow],
     /// Watch points.
@@ -82,7 +84,7 @@ pub fn raise(evidence: &Evidence<'_>) -> Vec<Alert> {
         new_system(evidence, system, &mut alerts);
         near(evidence, system, &mut alerts);
     }
-    gales(evidence, &mut alerts);
+    gale::gales(evidence, &mut alerts);
     rapid_falls(evidence, &mut alerts);
     silent(evidence, &mut alerts);
     for alert in &mut alerts {
@@ -156,13 +158,13 @@ fn weak_analysis(evidence: &Evidence<'_>, out: &mut Vec<Alert>) {
     out.push(found);
 }
 
-/// First hour of the unbroken run, up to the last value, that came on at `on` and has not fallen
+/// First time of the unbroken run, up to the last value, that came on at `on` and has not fallen
 /// below `off`; `None` where it does not stand.
-fn unbroken(values: &[(Hour, f64)], on: f64, off: f64) -> Option<Hour> {
+fn unbroken<T: Copy>(values: &[(T, f64)], on: f64, off: f64) -> Option<T> {
     let mut since = None;
-    for (hour, value) in values {
+    for (time, value) in values {
         since = match since {
-            None if *value >= on => Some(*hour),
+            None if *value >= on => Some(*time),
             Some(_) if *value < off || value.is_nan() => None,
             other => other,
         };
@@ -300,140 +302,20 @@ fn near(evidence: &Evidence<'_>, system: &System, out: &mut Vec<Alert>) {
     }
 }
 
-/// The strongest trusted expected surface wind, by the low it belongs to.
-fn strongest(evidence: &Evidence<'_>, at: usize) -> BTreeMap<String, (f64, Position)> {
-    let mut found: BTreeMap<String, (f64, Position)> = BTreeMap::new();
-    let (Some(field), Some(analysis)) = (evidence.wind_fields.get(at), evidence.hours.get(at))
-    else {
-        return found;
-    };
-    let lows: Vec<(&str, Position)> = evidence
-        .systems
-        .iter()
-        .filter(|system| system.kind == Kind::Low)
-        .filter_map(|system| {
-            let point = system.track.iter().find(|point| point.hour == field.hour)?;
-            Some((system.name.as_str(), point.position))
-        })
-        .collect();
-    let grid = &field.grid;
-    let least_m_s = crate::quantity::m_s_from_kt(evidence.thresholds.wind_kt * OFF_SHARE);
-    for (index, [u, v]) in field.surface_m_s.iter().enumerate() {
-        let speed_m_s = u.hypot(*v);
-        let trusted = analysis.error_ratio.get(index).is_some_and(|r| *r <= ERROR_RATIO_MAX);
-        let (column, row) = (index % grid.columns, index / grid.columns);
-        let inside = column > 1 && row > 1 && column + 2 < grid.columns && row + 2 < grid.rows;
-        if !(trusted && inside && speed_m_s >= least_m_s) {
-            continue;
-        }
-        let place = grid.position(column, row);
-        let owner = lows
-            .iter()
-            .map(|(name, centre)| (centre.distance_km(place), *name))
-            .filter(|(distance_km, _)| *distance_km <= LOW_REACH_KM)
-            .min_by(|one, other| one.0.total_cmp(&other.0).then(one.1.cmp(other.1)))
-            .map_or("elsewhere", |(_, name)| name);
-        let entry = found.entry(owner.to_owned()).or_insert((0.0, place));
-        if speed_m_s > entry.0 {
-            *entry = (speed_m_s, place);
-        }
-    }
-    found
-}
-
-fn gales(evidence: &Evidence<'_>, out: &mut Vec<Alert>) {
-    let on_kt = evidence.thresholds.wind_kt;
-    let by_hour: Vec<BTreeMap<String, (f64, Position)>> =
-        (0..evidence.wind_fields.len()).map(|at| strongest(evidence, at)).collect();
-    let Some(newest) = by_hour.last() else { return };
-    for (owner, (speed_m_s, place)) in newest {
-        let run: Vec<(Hour, f64)> = by_hour
-            .iter()
-            .zip(evidence.wind_fields)
-            .map(|(found, field)| {
-                (field.hour, found.get(owner).map_or(0.0, |(speed, _)| kt_from_m_s(*speed)))
-            })
-            .collect();
-        let Some(since) = unbroken(&run, on_kt, on_kt * OFF_SHARE) else { continue };
-        let speed_kt = kt_from_m_s(*speed_m_s);
-        let class = warning_class(speed_kt).unwrap_or("near gale");
-        let mut found = alert(Rule::Gale, urgency_of(class), owner, since.instant());
-        found.position = Some(*place);
-        let near = if owner == "elsewhere" { String::new() } else { format!(" near {owner}") };
-        found.message =
-            format!("{class}{near}: {speed_kt:.0} kt expected at {}", place_words(*place));
-        found.evidence = observed_words(evidence, *place);
-        out.push(found);
-    }
-    // Reports of such winds where the pressure does not imply them.
-    let mut alone: Vec<&StationWind> = evidence
-        .winds
-        .iter()
-        .filter(|wind| {
-            wind.observed.is_some_and(|observed| kt_from_m_s(observed.speed_m_s) >= on_kt)
-                && !newest.values().any(|(_, place)| place.distance_km(wind.position) < 800.0)
-        })
-        .collect();
-    alone.sort_by(|one, other| {
-        let speed = |wind: &StationWind| wind.observed.map_or(0.0, |wind| wind.speed_m_s);
-        speed(other).total_cmp(&speed(one)).then_with(|| one.station.cmp(&other.station))
-    });
-    for wind in alone.into_iter().take(NAMED_MAX) {
-        let Some(observed) = wind.observed else { continue };
-        let speed_kt = kt_from_m_s(observed.speed_m_s);
-        let class = warning_class(speed_kt).unwrap_or("near gale");
-        let since = wind.time.unwrap_or(evidence.now);
-        let mut found = alert(Rule::Gale, urgency_of(class), &wind.station, since);
-        found.position = Some(wind.position);
-        found.message = format!(
-            "{class} reported by {}: {speed_kt:.0} kt at {}",
-            wind.station,
-            place_words(wind.position)
-        );
-        found.evidence = if wind.explanation.is_empty() {
-            "one report".to_owned()
-        } else {
-            format!("one report; {}", wind.explanation)
-        };
-        out.push(found);
-    }
-}
-
-fn urgency_of(class: &str) -> Urgency {
-    match class {
-        "storm" | "hurricane force" => Urgency::Urgent,
-        "gale" => Urgency::Warning,
-        _ => Urgency::Notice,
-    }
-}
-
-fn observed_words(evidence: &Evidence<'_>, place: Position) -> String {
-    let strongest = evidence
-        .winds
-        .iter()
-        .filter(|wind| wind.position.distance_km(place) < 400.0)
-        .filter_map(|wind| Some((kt_from_m_s(wind.observed?.speed_m_s), &wind.station)))
-        .max_by(|one, other| one.0.total_cmp(&other.0).then_with(|| other.1.cmp(one.1)));
-    strongest.map_or_else(
-        || "from the pressure pattern; no wind report within 215 nm".to_owned(),
-        |(speed_kt, station)| {
-            format!("strongest report within 215 nm: {speed_kt:.0} kt at {station}")
-        },
-    )
-}
-
 fn rapid_falls(evidence: &Evidence<'_>, out: &mut Vec<Alert>) {
     let limit_hpa = evidence.thresholds.fall_3h_hpa;
-    let falling: Vec<&TendencyRow> = evidence
+    let falling: Vec<(&TendencyRow, Instant, f64)> = evidence
         .tendencies
         .iter()
-        .filter(|row| !row.doubtful && row.change_3h_hpa.is_some_and(|change| change < -limit_hpa))
+        .filter(|row| !row.doubtful)
+        .filter_map(|row| {
+            let change_hpa = row.change_3h_hpa?;
+            Some((row, fall_since(row, -change_hpa, limit_hpa)?, change_hpa))
+        })
         .collect();
-    for row in falling.iter().take(NAMED_MAX) {
-        let Some(change_hpa) = row.change_3h_hpa else { continue };
+    for (row, since, change_hpa) in falling.iter().take(NAMED_MAX).copied() {
         let subject = format!("{} {}", row.platform.word(), row.station);
-        let mut found =
-            alert(Rule::RapidFall, Urgency::Warning, &subject, fall_since(row, limit_hpa));
+        let mut found = alert(Rule::RapidFall, Urgency::Warning, &subject, since);
         found.position = Some(row.position);
         found.message = format!(
             "{} falls {:.1} hPa in 3 h at {}",
@@ -458,25 +340,23 @@ fn rapid_falls(evidence: &Evidence<'_>, out: &mut Vec<Alert>) {
     }
 }
 
-/// First hour of the unbroken run in which the station's own trace falls that fast; the trace ends
-/// at the whole hour of the newest report.
-fn fall_since(row: &TendencyRow, limit_hpa: f64) -> Instant {
+/// Since when a station falls more than the limit in 3 h, by its own trace, which ends at the whole
+/// hour of the newest report, and by its newest fall; `None` where it does not stand.
+fn fall_since(row: &TendencyRow, fall_3h_hpa: f64, limit_hpa: f64) -> Option<Instant> {
     let last = row.time.hour_nearest();
-    let length = row.trace_hpa.len();
-    let mut since = row.time;
-    for back in 0..length.saturating_sub(3) {
-        let at = length - 1 - back;
-        let (Some(Some(now)), Some(Some(then))) =
-            (row.trace_hpa.get(at), row.trace_hpa.get(at - 3))
-        else {
-            break;
-        };
-        if then - now < limit_hpa * OFF_SHARE {
-            break;
-        }
-        since = last.plus(-i64::try_from(back).unwrap_or(0)).instant().min(row.time);
-    }
-    since
+    let mut falls: Vec<(Instant, f64)> = row
+        .trace_hpa
+        .iter()
+        .zip(row.trace_hpa.iter().skip(3))
+        .rev()
+        .zip(0..)
+        .skip(1)
+        .filter_map(|((then, now), back)| Some((last.plus(-back).instant(), (*then)? - (*now)?)))
+        .collect();
+    falls.reverse();
+    falls.push((row.time, fall_3h_hpa));
+    // Very rapidly is more than the limit, not the limit itself (METHODS TEN-4).
+    unbroken(&falls, limit_hpa + 1e-9, limit_hpa * OFF_SHARE)
 }
 
 fn silent(evidence: &Evidence<'_>, out: &mut Vec<Alert>) {

@@ -123,6 +123,10 @@ impl Workshop {
         };
         let tendencies = tendency::table(&observed, now, valid, inputs.catalogue, &sampler);
         let newest_report = inputs.held.newest_until(now);
+        let observations: Vec<Arc<Observation>> = by_hour
+            .range(valid.plus(-settings.window_h)..=valid)
+            .flat_map(|(_, list)| list.iter().map(Arc::clone))
+            .collect();
         let alerts = raise(&Evidence {
             now,
             valid,
@@ -131,16 +135,13 @@ impl Workshop {
             hours: &hours,
             wind_fields: &wind_fields,
             winds: &winds,
+            observations: &observations,
             tendencies: &tendencies,
             watch_points: &watch_points,
             newest_report,
             silent: &silent_stations(&by_hour, valid),
             acknowledged: &inputs.decisions.acknowledged,
         });
-        let observations: Vec<Arc<Observation>> = by_hour
-            .range(valid.plus(-settings.window_h)..=valid)
-            .flat_map(|(_, list)| list.iter().map(Arc::clone))
-            .collect();
         let reports =
             arrivals::counts(inputs.held, &observed, &observations, &hours, newest_report);
         let arrivals = arrivals::arrivals(inputs.held, &observed, &hours, now);

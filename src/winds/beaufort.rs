@@ -5,14 +5,17 @@ const LOWER_KT: [f64; 12] = [1.0, 4.0, 7.0, 11.0, 17.0, 22.0, 28.0, 34.0, 41.0, 
 /// The same, m/s.
 const LOWER_M_S: [f64; 12] = [0.3, 1.6, 3.4, 5.5, 8.0, 10.8, 13.9, 17.2, 20.8, 24.5, 28.5, 32.7];
 
+/// 34 kt carried to metres a second and back is a hair less than 34 kt, and still a gale.
+const ROUNDING: f64 = 1e-6;
+
 /// Force of a speed in knots, 0 to 12.
 pub fn force_of_kt(speed_kt: f64) -> usize {
-    LOWER_KT.iter().filter(|lower| speed_kt >= **lower).count()
+    LOWER_KT.iter().filter(|lower| speed_kt + ROUNDING >= **lower).count()
 }
 
 /// Force of a speed in metres a second, 0 to 12.
 pub fn force_of_m_s(speed_m_s: f64) -> usize {
-    LOWER_M_S.iter().filter(|lower| speed_m_s >= **lower).count()
+    LOWER_M_S.iter().filter(|lower| speed_m_s + ROUNDING >= **lower).count()
 }
 
 /// The warning class of a mean wind in knots, from 34 kt: `gale`, `storm`, `hurricane force`
@@ -29,6 +32,7 @@ pub fn warning_class(speed_kt: f64) -> Option<&'static str> {
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::quantity::{kt_from_m_s, m_s_from_kt};
 
     /// METHODS CHK-122 and CHK-123 (WMO-No. 306, code table 1100); 34 kt is a gale: common
     /// practice, no source.
@@ -42,5 +46,9 @@ mod tests {
         assert_eq!(warning_class(34.0), Some("gale"));
         assert_eq!(warning_class(63.9), Some("storm"));
         assert_eq!(warning_class(64.0), Some("hurricane force"));
+        for speed_kt in [34.0, 48.0, 64.0] {
+            let there_and_back = kt_from_m_s(m_s_from_kt(speed_kt));
+            assert_eq!(warning_class(there_and_back), warning_class(speed_kt));
+        }
     }
 }

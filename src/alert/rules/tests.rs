@@ -64,6 +64,7 @@ fn raised(systems: &[System], now: Instant, newest: Option<Instant>) -> Vec<Aler
         hours: &[],
         wind_fields: &[],
         winds: &[],
+        observations: &[],
         tendencies: &[],
         watch_points: &[("Light 7".to_owned(), Position::clamped(51.0, -24.0))],
         newest_report: newest,
@@ -144,6 +145,7 @@ fn an_acknowledgement_ends_with_the_alert_it_was_given_to() {
             hours: &[],
             wind_fields: &[],
             winds: &[],
+            observations: &[],
             tendencies: &[],
             watch_points: &[],
             newest_report: Some(newest),
@@ -152,4 +154,45 @@ fn an_acknowledgement_ends_with_the_alert_it_was_given_to() {
         };
         assert_eq!(raise(&evidence)[0].acknowledged, acknowledged);
     }
+}
+
+fn station(trace: &[f64], newest_change_hpa: f64) -> TendencyRow {
+    TendencyRow {
+        station: crate::report::Identifier::new("03000").expect("an identifier"),
+        platform: crate::report::Platform::Land,
+        name: None,
+        position: Position::clamped(55.0, -5.0),
+        time: Hour::from_unix_h(30).instant(),
+        pressure_msl_hpa: trace.last().copied(),
+        characteristic: None,
+        characteristic_computed: None,
+        change_3h_reported_hpa: None,
+        change_3h_computed_hpa: Some(newest_change_hpa),
+        tide_3h_hpa: None,
+        ship_motion_3h_hpa: None,
+        change_3h_hpa: Some(newest_change_hpa),
+        change_3h_error_hpa: Some(0.3),
+        change_1h_hpa: None,
+        change_24h_hpa: None,
+        words: String::new(),
+        trace_hpa: trace.iter().map(|pressure_hpa| Some(*pressure_hpa)).collect(),
+        doubtful: false,
+    }
+}
+
+#[test]
+fn a_rapid_fall_begins_above_six_and_ends_below_it_by_a_tenth() {
+    let since = |steps: &[f64], newest: f64| {
+        let mut trace = vec![1000.0, 1000.0, 1000.0];
+        for (at, fall) in steps.iter().enumerate() {
+            trace.push(trace[at] - fall);
+        }
+        fall_since(&station(&trace, newest), -newest, 6.0).map(|time| time.hour_floor().unix_h())
+    };
+    assert_eq!(since(&[1.0, 3.0, 5.0], -5.9), None);
+    assert_eq!(since(&[1.0, 3.0, 6.0], -6.0), None, "6.0 is rapid, more than 6.0 is very rapid");
+    assert_eq!(since(&[1.0, 3.0, 6.1], -6.1), Some(30));
+    assert_eq!(since(&[1.0, 6.5, 5.8, 6.2], -6.2), Some(28));
+    assert_eq!(since(&[1.0, 6.5, 5.0, 5.8], -5.8), None);
+    assert_eq!(since(&[1.0, 6.5, 6.4, 5.8], -5.8), Some(28), "it wavers, it does not end");
 }
