@@ -29,7 +29,9 @@ pub fn clean(value: f64, decimals: usize) -> f64 {
 /// Text in lines of at most `width` characters, the later ones indented.
 pub fn wrapped(text: &str, width: usize, indent: usize) -> Vec<String> {
     let mut lines = Vec::new();
-    let mut line = String::new();
+    // The first line keeps the indentation that it came with.
+    let lead = text.len() - text.trim_start().len();
+    let mut line = " ".repeat(lead);
     for word in text.split_whitespace() {
         let begins = line.trim().is_empty();
         if !begins && line.len() + 1 + word.len() > width {
@@ -44,4 +46,24 @@ pub fn wrapped(text: &str, width: usize, indent: usize) -> Vec<String> {
         lines.push(line);
     }
     lines
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn lines_keep_their_width_and_indentation() {
+        let lines = wrapped("  one two three four", 9, 4);
+        assert_eq!(lines, ["  one two", "    three", "    four"]);
+        assert!(wrapped("", 10, 0).is_empty());
+    }
+
+    #[test]
+    fn no_minus_stands_before_nought() {
+        assert_eq!(signed(Some(-0.04), 1), "+0.0");
+        assert_eq!(signed(Some(-0.06), 1), "-0.1");
+        assert_eq!(signed(None, 1), "-");
+        assert_eq!(place_words(crate::sphere::Position::clamped(-4.25, 179.96)), "04.2S 180.0E");
+    }
 }

@@ -19,6 +19,7 @@ use crate::obs::{Catalogue, Held, Observation, Observed, Observer};
 use crate::quantity::m_s_from_kt;
 use crate::settings::Settings;
 use crate::sphere::Position;
+use crate::systems::Kind;
 use crate::systems::follow::{Followed, HourCentres, Wishes, follow, wind_radius_km};
 use crate::systems::names::NameBook;
 use crate::tendency;
@@ -92,10 +93,21 @@ impl Workshop {
         let newest = hours.last().filter(|analysis| analysis.hour == valid);
         let newest_field = wind_fields.last().filter(|field| field.hour == valid);
         let mut systems = followed.systems.clone();
-        for system in &mut systems {
+        let lows: Vec<Position> = systems
+            .iter()
+            .filter(|system| system.kind == Kind::Low)
+            .map(|system| system.position)
+            .collect();
+        for system in systems.iter_mut().filter(|system| system.kind == Kind::Low) {
+            let centre = system.position;
+            // A gale belongs to the nearest low.
+            let is_nearest = |place: Position| {
+                let own_km = centre.distance_km(place);
+                lows.iter().all(|other| other.distance_km(place) >= own_km)
+            };
             system.gale_radius_km = newest_field.and_then(|winds| {
-                let speed_m_s = |place| speed_at(winds, place);
-                wind_radius_km(system.position, m_s_from_kt(GALE_KT), GALE_REACH_KM, &speed_m_s)
+                let speed_m_s = |place| speed_at(winds, place).filter(|_| is_nearest(place));
+                wind_radius_km(centre, m_s_from_kt(GALE_KT), GALE_REACH_KM, &speed_m_s)
             });
         }
         let watch_points: Vec<(String, Position)> = settings

@@ -234,3 +234,6 @@ fn patience(due: &Due) -> Duration {
     }
     patience
 }
+
+#[cfg(test)]
+mod tests;

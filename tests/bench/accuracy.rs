@@ -233,7 +233,7 @@ fn withheld(rows: &[Vec<String>], case: &str, fold: u32) -> (Vec<f64>, Vec<f64>,
         let place = Position::clamped(number(&row[3]), number(&row[4]));
         let (height_m, pressure_hpa) = (number(&row[5]), number(&row[6]));
         let part: u32 = row[9].parse().expect("a number");
-        let held = if case == "hourly" { part % 10 == 0 } else { part % 10 == fold };
+        let held = if case == "hourly" { part.is_multiple_of(10) } else { part % 10 == fold };
         places.push(place);
         last = last.max(time.hour_nearest());
         let error_hpa = 0.6_f64.hypot(0.001 * height_m);
