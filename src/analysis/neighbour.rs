@@ -17,10 +17,13 @@ use crate::report::Platform;
 const GROSS_RANGE_HPA: f64 = 60.0;
 /// Probability of a gross error from which a pressure is refused.
 const REFUSED: f64 = 0.5;
-/// Expected standard deviations from which a used pressure is doubtful.
-const DOUBTFUL: f64 = 3.2;
+/// Standard deviations (wary ones) from which a used pressure is doubtful.
+const DOUBTFUL: f64 = 3.0;
 /// Error of a doubtful pressure is multiplied by this.
 const DOUBTFUL_ERROR_FACTOR: f64 = 2.0;
+/// Factors on the variances, of what is expected and of the report's error, in a judgement (own
+/// numbers: with 1 the centre of a real storm is refused, January 1996).
+const WARY: [f64; 2] = [5.0, 2.25];
 /// Neighbours in a judgement.
 const NEIGHBOURS: usize = 24;
 /// A low report with a fall of at least this over 3 h, hPa, is not refused alone below
@@ -28,7 +31,7 @@ const NEIGHBOURS: usize = 24;
 const SUPPORTING_FALL_HPA: f64 = 3.0;
 const EXPLODING_HPA: f64 = 15.0;
 /// Two reports within this distance (age counted in) support each other up to so many hPa.
-const SUPPORT_KM: f64 = 300.0;
+const SUPPORT_KM: f64 = 400.0;
 const SUPPORTED_HPA: f64 = 25.0;
 /// Wind: expected standard deviations from which it is not used for the pressure.
 const WIND_REFUSED: f64 = 4.5;
@@ -64,6 +67,12 @@ pub(super) fn pair_probability(
 
 fn normal(difference: f64, variance: f64) -> f64 {
     (-0.5 * difference * difference / variance).exp() / (std::f64::consts::TAU * variance).sqrt()
+}
+
+/// The variance with which a pressure is judged: the weather's extremes are larger than the covariance
+/// of ordinary days expects, and a storm must not be refused for being one.
+fn wary(background: f64, error_square: f64) -> f64 {
+    WARY[0] * background.max(0.0) + WARY[1] * error_square
 }
 
 /// Probability of a gross error before anything is known (ANA-7), raised where an earlier check
@@ -154,8 +163,11 @@ impl Check<'_> {
                 let difference = departure.values[0] - expected;
                 let variance = background + departure.error * departure.error;
                 out[report].pressure = Some((difference, variance));
-                let probability =
-                    gross_probability(difference, variance, prior(&self.used[report].observation));
+                let probability = gross_probability(
+                    difference,
+                    wary(background, departure.error * departure.error),
+                    prior(&self.used[report].observation),
+                );
                 if probability > REFUSED && !self.kept[report] {
                     suspects.push(Suspect { report, difference, background, probability });
                 }
@@ -164,7 +176,8 @@ impl Check<'_> {
         self.judge_suspects(suspects, &own, &mut out);
         for (report, judgement) in out.iter_mut().enumerate() {
             let Some((difference, variance)) = judgement.pressure else { continue };
-            let doubtful = difference.abs() > DOUBTFUL * variance.sqrt();
+            let error = error(&own, report).powi(2);
+            let doubtful = difference.abs() > DOUBTFUL * wary(variance - error, error).sqrt();
             if judgement.pressure_finding.is_none() && doubtful && !self.kept[report] {
                 let reason = format!(
                     "{difference:+.1} hPa from what the neighbours say, expected within {:.1}",
@@ -279,7 +292,7 @@ impl Check<'_> {
         let neighbours = self.neighbours(report, own, accused)?;
         let ([expected, _], [background, ..]) = expected(self.covariance, [site; 2], &neighbours);
         let difference = departure.values[0] - expected;
-        let variance = background + departure.error * departure.error;
+        let variance = wary(background, departure.error * departure.error);
         let prior = prior(&self.used[report].observation);
         let probability = gross_probability(difference, variance, prior);
         Some(Suspect { report, difference, background, probability })
@@ -317,8 +330,12 @@ impl Check<'_> {
         if correlation < 0.3 {
             return false;
         }
-        let one = (y_a.values[0] - means[0], v_a, y_a.error.powi(2), prior(first));
-        let other = (y_b.values[0] - means[1], v_b, y_b.error.powi(2), prior(second));
+        let part = |difference: f64, background: f64, error: f64, prior: f64| {
+            let error = WARY[1] * error * error;
+            (difference, WARY[0] * background, error, prior)
+        };
+        let one = part(differences[0], v_a, y_a.error, prior(first));
+        let other = part(differences[1], v_b, y_b.error, prior(second));
         pair_probability(one, other, correlation) < REFUSED
             && pair_probability(other, one, correlation) < REFUSED
     }

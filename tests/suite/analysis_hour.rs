@@ -279,7 +279,12 @@ fn a_real_storm_is_analysed_better_than_by_a_general_interpolator() {
         .collect();
     assert_eq!(list.len(), 300);
     let grid = Arc::new(Grid::fitted(19.0, 61.0, -141.0, -51.5, 91, 76));
-    let analysis = analyse(&grid, HOUR, &held(list), &AnalysisSettings::default());
+    let observations = held(list);
+    let analysis = analyse(&grid, HOUR, &observations, &AnalysisSettings::default());
+    // Every report is true: the storm must not be refused for being one, nor without its winds.
+    let alone = AnalysisSettings { use_winds: false, ..AnalysisSettings::default() };
+    assert_eq!(analysis.pressures_used, 300);
+    assert_eq!(analyse(&grid, HOUR, &observations, &alone).pressures_used, 300);
     let (mut square, mut normalised, mut count) = (0.0, 0.0, 0.0);
     for row in table("analysis_january_1996_truth.csv.gz").iter().filter(|row| row[0] == hour) {
         let place = Position::clamped(value(&row[1]), value(&row[2]));
