@@ -7,11 +7,12 @@
 
 use std::collections::{BTreeMap, BTreeSet, btree_map};
 use std::ops::RangeInclusive;
-use std::sync::Arc;
+use std::sync::{Arc, OnceLock};
 
 use serde::{Deserialize, Serialize};
 
 use super::Provenance;
+use super::series::{Point, StationPoint};
 use crate::instant::{Hour, Instant};
 use crate::report::{Identifier, Platform, Report};
 use crate::wire::{ByteCount, Complaint};
@@ -87,6 +88,8 @@ pub struct Row {
 pub struct HourReports {
     entries: BTreeMap<Key, Entry>,
     fingerprint: u64,
+    /// What series need of the entries, side by side: made when first asked for.
+    points: OnceLock<Box<[StationPoint]>>,
 }
 
 impl HourReports {
@@ -117,6 +120,18 @@ impl HourReports {
     /// Whether there are none.
     pub fn is_empty(&self) -> bool {
         self.entries.is_empty()
+    }
+
+    /// What series need of the standing reports, in the order of their keys.
+    pub(super) fn points(&self) -> &[StationPoint] {
+        self.points.get_or_init(|| {
+            let points = self.entries.iter().map(|(key, entry)| StationPoint {
+                platform: key.platform,
+                station: key.station,
+                point: Point::of(entry.standing()),
+            });
+            points.collect()
+        })
     }
 
     /// A fingerprint of the standing reports; it does not depend on their order of arrival.
@@ -175,6 +190,7 @@ impl Held {
         let copy = Copy::pack(&report, arrival);
         let place = Place::taught_by(&key, &copy);
         let bucket = Arc::make_mut(self.hours.entry(report.time.hour_nearest()).or_default());
+        bucket.points = OnceLock::new();
         let (joined, before, after) = match bucket.entries.entry(key) {
             btree_map::Entry::Vacant(slot) => {
                 let entry = slot.insert(Entry::new(copy));

@@ -4,15 +4,15 @@
 //! An [`Observer`] remembers the last answer and makes again only what a change can have touched;
 //! its answers are those of the plain function.
 
+use std::cmp::Ordering;
 use std::collections::{BTreeMap, BTreeSet};
-use std::iter::Peekable;
 use std::ops::RangeInclusive;
 use std::sync::Arc;
 
 use super::catalogue::{Catalogue, Conflict, resolve};
 use super::held::{Entry, Held, HourReports, Key, Places};
 use super::judge::judge;
-use super::series::{AHEAD_H, BACK_H, Point, Series};
+use super::series::{AHEAD_H, BACK_H, Point, Series, StationPoint};
 use super::{ObsSettings, Observation};
 use crate::instant::Hour;
 use crate::report::{Identifier, Platform};
@@ -84,12 +84,13 @@ pub fn observe_hour(
         return made;
     };
     let maker = Maker { held, catalogue, hour, settings };
-    let mut cursors: Vec<_> = maker.series_buckets().map(|bucket| cursor(bucket)).collect();
+    let mut cursors: Vec<_> = maker.series_buckets().map(HourReports::points).collect();
     let mut points = Vec::new();
+    let mut group = Vec::new();
     let mut entries = bucket.entries().peekable();
     while let Some((key, _)) = entries.peek() {
         let who = (key.platform, key.station);
-        let mut group = Vec::new();
+        group.clear();
         while let Some(next) = entries.next_if(|(key, _)| (key.platform, key.station) == who) {
             group.push(next);
         }
@@ -198,20 +199,16 @@ impl<'a> Maker<'a> {
     }
 }
 
-/// A walk through an hour's reports in the order of their keys.
-fn cursor(bucket: &HourReports) -> Peekable<impl Iterator<Item = (&Key, &Entry)>> {
-    bucket.entries().peekable()
-}
-
-/// Moves a walk to a station and takes its points. Stations must be asked for in order.
-fn advance<'a>(
-    cursor: &mut Peekable<impl Iterator<Item = (&'a Key, &'a Entry)>>,
-    who: Who,
-    points: &mut Vec<Point>,
-) {
-    while cursor.next_if(|(key, _)| (key.platform, key.station) < who).is_some() {}
-    while let Some((_, entry)) = cursor.next_if(|(key, _)| (key.platform, key.station) == who) {
-        points.push(Point::of(entry.standing()));
+/// Moves a walk through an hour's points to a station and takes its own. Stations must be asked for
+/// in order.
+fn advance(cursor: &mut &[StationPoint], who: Who, points: &mut Vec<Point>) {
+    while let Some((first, rest)) = cursor.split_first() {
+        match (first.platform, first.station).cmp(&who) {
+            Ordering::Less => {}
+            Ordering::Equal => points.push(first.point),
+            Ordering::Greater => return,
+        }
+        *cursor = rest;
     }
 }
 
@@ -332,38 +329,48 @@ fn changed_stations(old: &Held, new: &Held) -> BTreeMap<Hour, BTreeSet<Who>> {
         {
             continue;
         }
-        let before: BTreeMap<&Key, &Entry> =
-            before.map(|bucket| bucket.entries().collect()).unwrap_or_default();
         let stations = changed.entry(hour).or_default();
-        let mut seen = 0;
-        for (key, entry) in after.iter().flat_map(|bucket| bucket.entries()) {
-            match before.get(key) {
-                Some(held) => {
-                    seen += 1;
-                    if !held.is_same(entry) {
-                        stations.insert((key.platform, key.station));
-                    }
-                }
-                None => {
+        let (before, after) = (entries_of(before), entries_of(after));
+        let (mut before, mut after) = (before.as_slice(), after.as_slice());
+        // Both are in the order of their keys: a walk through the two finds what one lacks.
+        loop {
+            let order = match (before.first(), after.first()) {
+                (None, None) => break,
+                (Some(_), None) => Ordering::Less,
+                (None, Some(_)) => Ordering::Greater,
+                (Some((old, _)), Some((new, _))) => old.cmp(new),
+            };
+            let old = before.first().filter(|_| order.is_le());
+            let new = after.first().filter(|_| order.is_ge());
+            match (old, new) {
+                (Some((_, held)), Some((_, entry))) if held.is_same(entry) => {}
+                (Some((key, _)), _) | (None, Some((key, _))) => {
                     stations.insert((key.platform, key.station));
                 }
+                (None, None) => {}
             }
-        }
-        if seen < before.len() {
-            let left = |key: &Key| after.is_none_or(|bucket| !bucket.holds(key));
-            let gone = before.keys().filter(|key| left(key));
-            stations.extend(gone.map(|key| (key.platform, key.station)));
+            before = before.get(usize::from(old.is_some())..).unwrap_or_default();
+            after = after.get(usize::from(new.is_some())..).unwrap_or_default();
         }
     }
     changed
 }
 
+fn entries_of(bucket: Option<&Arc<HourReports>>) -> Vec<(&Key, &Entry)> {
+    bucket.into_iter().flat_map(|bucket| bucket.entries()).collect()
+}
+
 /// Stations that the reports place otherwise than before.
 fn moved_stations(old: &Held, new: &Held) -> BTreeSet<Who> {
-    let place =
-        |held: &Held, who: &Who| held.places().get(who).and_then(Places::most_given).copied();
-    let names: BTreeSet<&Who> = old.places().keys().chain(new.places().keys()).collect();
-    names.into_iter().filter(|who| place(old, who) != place(new, who)).copied().collect()
+    let mut moved = BTreeSet::new();
+    for (who, places) in new.places() {
+        let before = old.places().get(who).and_then(Places::most_given);
+        if before != places.most_given() {
+            moved.insert(*who);
+        }
+    }
+    moved.extend(old.places().keys().filter(|who| !new.places().contains_key(who)));
+    moved
 }
 
 #[cfg(test)]

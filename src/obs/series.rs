@@ -2,6 +2,7 @@
 
 use crate::instant::Instant;
 use crate::obs::held::{Copy, Slot};
+use crate::report::{Identifier, Platform};
 use crate::sphere::Position;
 
 /// Hours before the hour that a series reaches back: the temperature of 12 hours ago (RED-3).
@@ -35,6 +36,17 @@ impl Point {
             air_temperature_c: copy.value(Slot::AirTemperature),
         }
     }
+}
+
+/// A point with the station it belongs to.
+#[derive(Clone, Copy, PartialEq, Debug)]
+pub struct StationPoint {
+    /// What kind of place.
+    pub platform: Platform,
+    /// Who.
+    pub station: Identifier,
+    /// What was reported.
+    pub point: Point,
 }
 
 /// A pressure that can be compared within a series.
