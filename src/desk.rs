@@ -233,3 +233,6 @@ impl Desk {
         update::update(self, event, picture)
     }
 }
+
+#[cfg(test)]
+mod tests;

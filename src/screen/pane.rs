@@ -18,6 +18,8 @@ mod systems;
 mod tendencies;
 mod winds;
 
+pub(super) use systems::phase_word;
+
 /// Rows from which a pane has room for the detail of its selected row.
 const DETAIL_FROM: u16 = 11;
 

@@ -73,7 +73,8 @@ fn valid() -> Hour {
 
 /// The usual sample: the north-east Atlantic.
 pub(super) fn picture() -> Picture {
-    picture_at(Where { south: false, turn_deg: 0.0 })
+    static USUAL: std::sync::OnceLock<Picture> = std::sync::OnceLock::new();
+    USUAL.get_or_init(|| picture_at(Where { south: false, turn_deg: 0.0 })).clone()
 }
 
 /// The same weather elsewhere.

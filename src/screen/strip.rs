@@ -91,10 +91,10 @@ fn items(scene: Scene<'_>, short: bool) -> [Vec<Item>; 2] {
             let error = number::fixed(low.pressure_hpa.error, 1);
             let mut line = format!("deepest {} {pressure}{weak} +-{error} hPa", low.name);
             if let Some(change) = low.change_3h_hpa {
-                let _ = write!(line, ", {} in 3 h", number::signed(change.value, 1));
+                let _ = write!(line, ", {}/3 h", number::signed(change.value, 1));
             }
             if let Some(change) = low.change_24h_hpa {
-                let _ = write!(line, ", {} in 24 h", number::signed(change.value, 1));
+                let _ = write!(line, ", {}/24 h", number::signed(change.value, 1));
             }
             if let Some(rate) = low.bergeron.or(low.bergeron_12h) {
                 let _ = write!(line, ", {} bergeron", number::fixed(rate.value, 1));

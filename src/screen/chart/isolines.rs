@@ -15,7 +15,7 @@ pub(super) const BROKEN_RATIO: f64 = 0.7;
 /// Error ratio above which the analysis says next to nothing of its own: no isobar.
 pub(super) const NOTHING_RATIO: f64 = 0.97;
 /// Dots that isobars should be apart where the gradient is in the steepest tenth of what is seen.
-const APART_DOTS: f64 = 6.0;
+const APART_DOTS: f64 = 3.0;
 /// Intervals of isobars, hPa, each with the multiple that is drawn bolder (every fourth or fifth).
 /// The last serves windows of few cells onto a whole ocean.
 const INTERVALS: [(f64, f64); 5] =

@@ -21,7 +21,7 @@ pub(super) const SHEET: Sheet = Sheet {
         numbers("1 h", 5, 5),
         numbers("24 h", 6, 4),
         words("24 h trace", 12, 2),
-        widening("trend in words", 16, 1),
+        widening("trend in words", 24, 1),
     ],
     units: "hPa",
     nothing: "no station with a pressure tendency",
@@ -73,7 +73,8 @@ pub(super) fn detail(scene: Scene<'_>, row: &TendencyRow, width: usize) -> Vec<S
         part("as sent", row.change_3h_reported_hpa),
         part("from its own series", row.change_3h_computed_hpa),
         part("of it tide", row.tide_3h_hpa),
-        part("own motion", row.ship_motion_3h_hpa),
+        row.ship_motion_3h_hpa
+            .map_or_else(|| "no motion of its own".to_owned(), |way| part("own motion", Some(way))),
         part("left", row.change_3h_hpa),
         row.change_3h_error_hpa
             .map_or_else(String::new, |error| format!(" +-{}", number::fixed(error, 1))),
