@@ -5,6 +5,7 @@
 //! the present moment comes in as an event. What it wants done outside it says with an [`Effect`].
 
 use crate::instant::Instant;
+use crate::obs::Verdict;
 use crate::picture::Picture;
 
 pub mod key;
@@ -137,6 +138,13 @@ pub enum Effect {
         from: String,
         /// The chosen name.
         to: String,
+    },
+    /// The watchkeeper overrules what the checks made of a report.
+    Overrule {
+        /// What the decision is kept under, as the arrival's line says.
+        decision: String,
+        /// The verdict that stands; `None` takes the decision back.
+        verdict: Option<Verdict>,
     },
     /// Write the situation report to a file and say where with a notice.
     Export,

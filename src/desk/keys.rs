@@ -58,12 +58,20 @@ pub const SYSTEMS: Keys =
 /// Keys of the Alerts list beside those of a list.
 pub const ALERTS: Keys = &[("a", "acknowledge"), ("u", "take back the acknowledgement")];
 
+/// Keys of the Arrivals list beside those of a list.
+pub const ARRIVALS: Keys = &[
+    ("y", "overrule the checks: the report is sound"),
+    ("x", "overrule the checks: refuse the report"),
+    ("u", "take the decision back"),
+];
+
 /// The keys of a pane.
 pub const fn here(pane: Pane) -> (Keys, Keys) {
     match pane {
         Pane::Chart => (CHART, &[]),
         Pane::Systems => (LIST, SYSTEMS),
         Pane::Alerts => (LIST, ALERTS),
+        Pane::Arrivals => (LIST, ARRIVALS),
         _ => (LIST, &[]),
     }
 }
@@ -113,6 +121,18 @@ pub const fn bottom(pane: Pane) -> Keys {
             ("/", "filter"),
             ("n", "name"),
             ("d", "dismiss"),
+            ("z", "alone"),
+            ("q", "quit"),
+        ],
+        Pane::Arrivals => &[
+            ("?", "help"),
+            ("Tab", "pane"),
+            ("jk", "select"),
+            ("y", "it is sound"),
+            ("x", "refuse it"),
+            ("u", "take back"),
+            ("/", "filter"),
+            ("o", "order"),
             ("z", "alone"),
             ("q", "quit"),
         ],

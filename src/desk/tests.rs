@@ -2,6 +2,7 @@
 
 use super::*;
 use crate::instant::Hour;
+use crate::obs::Verdict;
 use crate::picture::{Arrivals, Picture, ReportCounts};
 use crate::sphere::Position;
 use crate::systems::{Kind, Measured, Phase, System, TrackPoint};
@@ -64,13 +65,32 @@ fn picture() -> Picture {
         grid,
         reports: ReportCounts::default(),
         wind_fields: Vec::new(),
+        ended: Vec::new(),
+        law: std::sync::Arc::default(),
         systems: vec![system("L1", 50.0), system("L2", 55.0), system("L3", 45.0)],
         winds: Vec::new(),
         convergence: Vec::new(),
         tendencies: Vec::new(),
         alerts: vec![alert("gale L1", false), alert("gale L2", true)],
         observations: Vec::new(),
-        arrivals: Arrivals::default(),
+        arrivals: Arrivals {
+            lines: vec![line(Some("land 03953 2026")), line(None)],
+            ..Arrivals::default()
+        },
+    }
+}
+
+fn line(decision: Option<&str>) -> crate::picture::ArrivalLine {
+    crate::picture::ArrivalLine {
+        received: Instant::from_unix_s(0),
+        who: "03953".to_owned(),
+        form: "synop".to_owned(),
+        time: None,
+        late_minutes: None,
+        verdict: Verdict::Doubtful,
+        text: String::new(),
+        file: "a".to_owned(),
+        decision: decision.map(str::to_owned),
     }
 }
 
@@ -149,10 +169,8 @@ fn every_key_of_the_bottom_lines_does_something() {
             };
             for key in pieces {
                 // Taking back needs an alert that is acknowledged; rows need rows.
-                if matches!(
-                    pane,
-                    Pane::Winds | Pane::Convergence | Pane::Tendencies | Pane::Arrivals
-                ) && !matches!(key.as_str(), "?" | "<tab>" | "q" | "z" | "o" | "/")
+                if matches!(pane, Pane::Winds | Pane::Convergence | Pane::Tendencies)
+                    && !matches!(key.as_str(), "?" | "<tab>" | "q" | "z" | "o" | "/")
                 {
                     continue;
                 }
@@ -182,6 +200,15 @@ fn a_system_is_dismissed_only_after_a_yes_and_renamed_after_enter() {
     let renamed = Effect::Rename { from: "L1".to_owned(), to: "Ada".to_owned() };
     assert!(after("SnAdx<backspace>a<enter>").1.contains(&renamed));
     assert!(!after("SnAda<esc>").1.contains(&renamed));
+}
+
+#[test]
+fn a_report_is_overruled_where_a_decision_about_it_is_possible() {
+    let overrule = |verdict| Effect::Overrule { decision: "land 03953 2026".to_owned(), verdict };
+    assert_eq!(after("Ry").1.last(), Some(&overrule(Some(Verdict::Sound))));
+    assert_eq!(after("Rx").1.last(), Some(&overrule(Some(Verdict::Refused))));
+    assert_eq!(after("Ru").1.last(), Some(&overrule(None)));
+    assert_eq!(after("Rjx").1.last(), Some(&Effect::Draw), "a line about a file: only a notice");
 }
 
 #[test]

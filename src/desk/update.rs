@@ -3,6 +3,7 @@
 use super::key::{Code, Key};
 use super::view::{View, system_at};
 use super::{Desk, Effect, Event, Input, Pane, rows};
+use crate::obs::Verdict;
 use crate::picture::Picture;
 use crate::sphere::Position;
 
@@ -381,6 +382,19 @@ fn on_row(desk: &mut Desk, code: Code, picture: &Picture, row: usize) -> Vec<Eff
             .get(row)
             .filter(|alert| alert.acknowledged)
             .map_or_else(Vec::new, |alert| vec![Effect::Unacknowledge(alert.key.clone())]),
+        (Pane::Arrivals, Code::Char(c @ ('y' | 'x' | 'u'))) => {
+            let line = picture.arrivals.lines.get(row);
+            let Some(decision) = line.and_then(|line| line.decision.clone()) else {
+                desk.notice = Some("no decision can be kept about this line".to_owned());
+                return vec![Effect::Draw];
+            };
+            let verdict = match c {
+                'y' => Some(Verdict::Sound),
+                'x' => Some(Verdict::Refused),
+                _ => None,
+            };
+            vec![Effect::Overrule { decision, verdict }]
+        }
         (Pane::Systems, Code::Char(c @ ('f' | 'n' | 'd'))) => {
             let Some(system) = picture.systems.get(row) else { return Vec::new() };
             let name = system.name.clone();

@@ -103,6 +103,7 @@ pub(super) fn picture_at(place: Where) -> Picture {
         wind_fields,
         systems: systems(place),
         ended: Vec::new(),
+        law: Arc::default(),
         winds: station_winds(place),
         convergence: convergence(place),
         tendencies: tendencies(place),
@@ -551,7 +552,7 @@ fn arrivals() -> Arrivals {
         verdict,
         text: text.to_owned(),
         file: format!("A_SN{minutes:02}QGKS151200_C_QGKS.txt"),
-        decision: None,
+        decision: Some(format!("land {who} 2026-01-15T12:00:00Z")),
     };
     let mut lines = vec![
         line(22, "SKELF", "ship", Verdict::Sound, ""),

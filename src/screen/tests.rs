@@ -237,3 +237,34 @@ fn keys_lead_from_a_row_to_its_place_on_the_chart() {
     assert!(text.contains("only with \"ship\"") && text.contains("SKELF"), "{text}");
     assert!(!text.contains("QGKA"), "{text}");
 }
+
+/// The samples, read and judged as the watch does it: their pictures on the screen.
+#[test]
+fn the_sample_feeds_fill_the_screen() {
+    for name in ["northern-ocean-low", "southern-date-line"] {
+        let folder = PathBuf::from(env!("CARGO_MANIFEST_DIR")).join("samples").join(name);
+        let held = crate::feed::batch::read_folder(&folder.join("feed"), None).expect("a folder");
+        let now = held.newest().expect("reports").hour_nearest().instant();
+        // A short window: the picture, not the history, is looked at here.
+        let settings = Settings { window_h: 6, ..Settings::default() };
+        let inputs = crate::picture::Inputs {
+            held: &held,
+            catalogue: &crate::obs::Catalogue::built_in(),
+            decisions: &crate::picture::Decisions::default(),
+            names: &crate::systems::names::NameBook::default(),
+            settings: &settings,
+        };
+        let (picture, _) = crate::picture::picture(&inputs, now);
+        for (columns, rows, script) in [(80, 24, ""), (160, 48, "x"), (200, 60, "")] {
+            let desk = typed(&picture, columns, rows, script);
+            let text = drawn(&picture, &desk, Glyphs::Braille).join("\n");
+            if std::env::var("SHOW").is_ok() {
+                std::io::Write::write_all(&mut std::io::stderr(), text.as_bytes())
+                    .expect("written");
+            }
+            let low = picture.systems.first().expect("a system");
+            assert!(text.contains(&low.name), "{text}");
+            assert!(!text.contains("no analysis of this hour"), "{text}");
+        }
+    }
+}

@@ -198,6 +198,9 @@ impl Interface<'_> {
             Effect::Unacknowledge(key) => helpers.ask(Task::Acknowledge(key, false)),
             Effect::Dismiss(name) => helpers.ask(Task::Dismiss(name)),
             Effect::Rename { from, to } => helpers.ask(Task::Rename(from, to)),
+            Effect::Overrule { decision, verdict } => {
+                helpers.ask(Task::Overrule(decision, verdict));
+            }
             Effect::Export => {
                 let said = picture
                     .map_or_else(|| "no picture yet".to_owned(), |picture| helpers.export(picture));

@@ -27,8 +27,8 @@ pub enum Task {
     Dismiss(String),
     /// A system has another name.
     Rename(String, String),
-    /// A report was overruled.
-    Overrule(String, Verdict),
+    /// A report was overruled, or no longer is.
+    Overrule(String, Option<Verdict>),
     /// Time has gone by.
     Time,
     /// The watch ends.
@@ -113,8 +113,11 @@ impl Worker {
                 let computed = computed.map_or(from, |(computed, _)| computed.clone());
                 self.decisions.renamed.insert(computed, to);
             }
-            Task::Overrule(key, verdict) => {
+            Task::Overrule(key, Some(verdict)) => {
                 self.decisions.overruled.insert(key, verdict);
+            }
+            Task::Overrule(key, None) => {
+                self.decisions.overruled.remove(&key);
             }
             Task::Files(_) | Task::Time | Task::End => return false,
         }

@@ -21,9 +21,12 @@ struct Standing<'a> {
 }
 
 fn standing(picture: &Picture, hour: Hour) -> Vec<Standing<'_>> {
+    // In the past those that have ended since are there too.
+    let ended = if hour < picture.valid { picture.ended.as_slice() } else { &[] };
     picture
         .systems
         .iter()
+        .chain(ended)
         .filter_map(|system| {
             let place = system_at(system, hour, picture.valid)?;
             let pressure_hpa = if hour == picture.valid {
@@ -63,7 +66,7 @@ pub(super) fn words(view: &View, picture: &Picture, hour: Hour, labels: &mut Lab
             format!("{letter} {name}{weak}")
         };
         if !labels.place(column, row, &full, role, 0) {
-            labels.place(column, row, &letter.to_string(), role, 0);
+            labels.place(column, row, &letter.to_string(), role, 1);
         }
         let Some(pressure) = standing.pressure_hpa else { continue };
         let text = number::fixed(pressure, 0);

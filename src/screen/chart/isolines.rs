@@ -12,8 +12,9 @@ use crate::winds::WindField;
 
 /// Error ratio above which an isobar is drawn broken (METHODS ANA-5).
 pub(super) const BROKEN_RATIO: f64 = 0.7;
-/// Error ratio above which the analysis says next to nothing of its own: no isobar.
-pub(super) const NOTHING_RATIO: f64 = 0.97;
+/// Error ratio above which the analysis says next to nothing of its own: no isobar (the ratio from
+/// which the Picture itself states nothing at a point).
+pub(super) const NOTHING_RATIO: f64 = 0.9;
 /// Dots that isobars should be apart where the gradient is in the steepest tenth of what is seen.
 const APART_DOTS: f64 = 3.0;
 /// Intervals of isobars, hPa, each with the multiple that is drawn bolder (every fourth or fifth).

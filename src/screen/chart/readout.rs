@@ -1,36 +1,32 @@
 //! What is read out at the cursor, and the legend below the chart.
 
-use super::isolines::{BROKEN_RATIO, NOTHING_RATIO};
+use super::isolines::BROKEN_RATIO;
 use super::reports;
 use crate::desk::view::{View, system_at};
-use crate::quantity::{nm_from_km, wind_from_components};
+use crate::picture::PointValues;
+use crate::quantity::nm_from_km;
 use crate::screen::number;
 use crate::screen::{Scene, strip};
 use crate::sphere::Position;
-use crate::winds::{Wind, WindField};
 
 /// The read-out at a place, in pieces that belong together; a piece is never broken.
 pub(super) fn at(scene: Scene<'_>, place: Position) -> Vec<String> {
     let picture = scene.picture;
     let hour = scene.desk.chart.hour_shown(picture);
     let mut out = vec![number::place(place)];
-    let analysis = picture.hour(hour);
-    let point = analysis.and_then(|analysis| analysis.at(place));
-    let ratio = analysis.and_then(|analysis| analysis.grid.sample(&analysis.error_ratio, place));
-    match (&point, ratio) {
-        (_, Some(ratio)) if ratio > NOTHING_RATIO => out.push("no analysis here".to_owned()),
-        (None, _) => out.push("no analysis here".to_owned()),
-        (Some(point), ratio) => {
-            let weak = ratio.is_none_or(|ratio| ratio > BROKEN_RATIO);
+    let values = picture.at_point_of(hour, place);
+    match values.pressure_hpa {
+        None => out.push("no analysis here".to_owned()),
+        Some(pressure) => {
+            let weak = values.error_ratio.is_none_or(|ratio| ratio > BROKEN_RATIO);
+            let error = values.pressure_error_hpa.unwrap_or(f64::NAN);
             out.push(format!(
                 "{}{} hPa +-{}",
-                number::fixed(point.pressure_hpa, 1),
+                number::fixed(pressure, 1),
                 if weak { "?" } else { "" },
-                number::fixed(point.pressure_error_hpa, 1)
+                number::fixed(error, 1)
             ));
-            if let Some(field) = picture.wind_field(hour) {
-                winds(field, place, weak, &mut out);
-            }
+            winds(&values, weak, &mut out);
         }
     }
     if let Some((observation, distance_km)) = reports::nearest(picture, hour, place) {
@@ -63,27 +59,25 @@ fn way(from: Position, to: Position, distance_km: f64) -> String {
     )
 }
 
-fn winds(field: &WindField, place: Position, weak: bool, out: &mut Vec<String>) {
+fn winds(values: &PointValues, weak: bool, out: &mut Vec<String>) {
     let mark = if weak { "?" } else { "" };
-    if let Some(change) = field.grid.sample(&field.change_3h_hpa, place) {
-        out.push(format!("3 h {}{mark}", number::signed(change, 1)));
-    }
-    let sample = |values: &[[f64; 2]]| {
-        let part = |index: usize| -> Option<f64> {
-            let one: Vec<f64> = values.iter().map(|pair| pair[index]).collect();
-            field.grid.sample(&one, place)
-        };
-        let (from_deg, speed_m_s) = wind_from_components(part(0)?, part(1)?);
-        Some(Wind { from_deg, speed_m_s })
-    };
+    let change = values.change_3h_hpa.map_or_else(
+        || number::MISSING.to_owned(),
+        |change| format!("{}{mark}", number::signed(change, 1)),
+    );
+    out.push(format!("3 h {change}"));
+    let doubt = if weak || values.winds.low_latitude || values.winds.capped { "?" } else { "" };
     let named = [
-        ("surface", sample(&field.surface_m_s)),
-        ("gradient", sample(&field.gradient_m_s)),
-        ("geostrophic", sample(&field.geostrophic_m_s)),
+        ("surface", values.winds.surface),
+        ("gradient", values.winds.gradient),
+        ("geostrophic", values.winds.geostrophic),
     ];
     for (name, wind) in named {
-        let text = wind.map_or_else(|| number::MISSING.to_owned(), number::wind_text);
-        out.push(format!("{name} {text}{mark}"));
+        let text = wind.map_or_else(
+            || number::MISSING.to_owned(),
+            |wind| format!("{}{doubt}", number::wind_text(wind)),
+        );
+        out.push(format!("{name} {text}"));
     }
 }
 
