@@ -110,7 +110,6 @@ pub(super) fn picture_at(place: Where) -> Picture {
         alerts: alerts(place),
         observations: observations(place),
         arrivals: arrivals(),
-        law: Arc::default(),
     }
 }
 

@@ -258,10 +258,6 @@ fn the_sample_feeds_fill_the_screen() {
         for (columns, rows, script) in [(80, 24, ""), (160, 48, "x"), (200, 60, "")] {
             let desk = typed(&picture, columns, rows, script);
             let text = drawn(&picture, &desk, Glyphs::Braille).join("\n");
-            if std::env::var("SHOW").is_ok() {
-                std::io::Write::write_all(&mut std::io::stderr(), text.as_bytes())
-                    .expect("written");
-            }
             let low = picture.systems.first().expect("a system");
             assert!(text.contains(&low.name), "{text}");
             assert!(!text.contains("no analysis of this hour"), "{text}");

@@ -6,6 +6,7 @@
 mod accuracy;
 mod analysis;
 mod obs;
+mod screen;
 
 fn main() {
     let wanted: Vec<String> =
@@ -19,5 +20,8 @@ fn main() {
     }
     if asked("obs") {
         obs::run();
+    }
+    if asked("screen") {
+        screen::run();
     }
 }
