@@ -28,7 +28,7 @@ fn timed(mut work: impl FnMut()) -> Duration {
 }
 
 /// Draws frames at several sizes and states the median time of each.
-pub fn run() {
+pub(crate) fn run() {
     let folder = Path::new(env!("CARGO_MANIFEST_DIR")).join("samples/northern-ocean-low/feed");
     let Ok(held) = read_folder(&folder, None) else { return };
     let now = held.newest().unwrap_or_default().hour_nearest().instant();
