@@ -1,7 +1,7 @@
 //! A ship's track (METHODS QC-4): how fast it would have had to go.
 
 use super::{Case, Findings};
-use crate::instant::HOUR_S;
+use crate::instant::{HOUR_S, Instant};
 use crate::obs::series::Point;
 use crate::obs::{Element, Verdict};
 use crate::quantity::{kt_from_m_s, nm_from_km, wrap_180_deg};
@@ -60,25 +60,46 @@ pub fn check(case: &Case<'_>, findings: &mut Findings) {
     };
     let speed_kt = fast(from, here, hours);
     if speed_kt > limit_kt {
+        let earlier = case
+            .series
+            .before(before.time, BACK_S - report.time.seconds_since(before.time), placed)
+            .and_then(|point| Some((point.position?, point.time)));
+        let back_kt = |(to, time): (Position, Instant)| {
+            (
+                fast(to, from, before.time.hours_since(time)),
+                fast(to, here, report.time.hours_since(time)),
+            )
+        };
+        let known = earlier.map(back_kt);
+        if known.is_some_and(|(last_kt, this_kt)| last_kt > limit_kt && this_kt <= limit_kt) {
+            // Here it fits the position before the last one, which the last one does not: that one
+            // was wrong, and this report pays no price for it.
+            return;
+        }
+        let slip = sign_slip(here, |place| fast(from, place, hours) <= limit_kt);
+        // Two positions that agree, and a third that only another quadrant brings to them: this
+        // one is wrong for certain, without waiting for the next (METHODS QC-3).
+        let slipped = slip.is_some() && known.is_some_and(|(last_kt, _)| last_kt <= limit_kt);
         let after = case.series.after(report.time, BACK_S, placed);
         let verdict = match after.and_then(|point| Some((point.position?, point.time))) {
             // Out and back: this position is the wrong one. Only out: either may be.
             Some((to, time)) => {
                 let onward_kt = fast(here, to, time.hours_since(report.time));
                 let straight_kt = fast(from, to, time.hours_since(before.time));
-                if onward_kt > limit_kt && straight_kt <= limit_kt {
+                if slipped || (onward_kt > limit_kt && straight_kt <= limit_kt) {
                     Verdict::Refused
                 } else {
                     Verdict::Doubtful
                 }
             }
+            None if slipped => Verdict::Refused,
             None => Verdict::Doubtful,
         };
         let mut reason = format!(
             "{:.0} nm in {hours:.1} h from its last position: {speed_kt:.0} kt, limit {limit_kt:.0}",
             nm_from_km(from.distance_km(here))
         );
-        if let Some(hint) = sign_slip(here, |place| fast(from, place, hours) <= limit_kt) {
+        if let Some(hint) = slip {
             reason.push_str(&hint);
         }
         findings.add(Element::Position, verdict, CHECK, reason);
