@@ -2,8 +2,10 @@
 mod analysis_hour;
 mod checks;
 mod commands;
+mod fold;
 mod hostile;
 mod house;
+mod law;
 mod obs_real_hours;
 mod reduction;
 mod rehearse_command;
