@@ -32,8 +32,12 @@ impl Complaint {
 
 /// Text from outside made safe to show: control and non-ASCII bytes escaped, cut with a mark.
 pub fn printable(bytes: &[u8], characters_max: usize) -> String {
-    let mut out = String::new();
+    let mut out = String::with_capacity(bytes.len().min(characters_max) + 1);
     for &byte in bytes {
+        if matches!(byte, b' '..=b'~') && out.len() < characters_max {
+            out.push(char::from(byte));
+            continue;
+        }
         let piece = match byte {
             b' '..=b'~' => char::from(byte).to_string(),
             b'\n' => "\\n".to_owned(),

@@ -44,11 +44,13 @@ pub(crate) fn line_length(text: &[u8]) -> usize {
 /// Whether the line at the start of `text` is a header: it has commas and two known column names.
 pub(crate) fn is_header(text: &[u8]) -> bool {
     let text = text.get(..HEADER_BYTES_MAX).unwrap_or(text);
-    let length = text.iter().position(|&byte| matches!(byte, b'\n' | b'\r')).unwrap_or(text.len());
-    let line = text.get(..length).unwrap_or_default();
-    if !line.contains(&b',') {
+    let is_end = |byte: &u8| matches!(byte, b'\n' | b'\r');
+    // Most lines are told from a header by the first of these: a comma, or none.
+    if text.iter().find(|byte| **byte == b',' || is_end(byte)) != Some(&b',') {
         return false;
     }
+    let length = text.iter().position(is_end).unwrap_or(text.len());
+    let line = text.get(..length).unwrap_or_default();
     csv::fields(line).take(COLUMNS_MAX).filter(|field| Column::named(&field.text).is_some()).count()
         >= 2
 }

@@ -100,7 +100,7 @@ impl<'a, 'l, L: Listener> Walk<'a, 'l, L> {
         if self.separators() {
             return;
         }
-        match mark::at(self.rest()) {
+        match self.ends.known(self.at).unwrap_or_else(|| mark::at(self.rest())) {
             Mark::Bufr | Mark::Grib => self.binary(),
             Mark::Frame(length) => self.envelope(self.at + length),
             Mark::Heading(heading) => self.begin_bulletin(heading),

@@ -5,6 +5,8 @@
 
 mod accuracy;
 mod analysis;
+mod decode;
+mod fuzz;
 mod obs;
 mod screen;
 
@@ -23,5 +25,12 @@ fn main() {
     }
     if asked("screen") {
         screen::run();
+    }
+    if asked("decode") {
+        decode::run();
+    }
+    // Long, and no measurement: only when asked by name.
+    if wanted.iter().any(|word| word == "fuzz") {
+        fuzz::run(&wanted);
     }
 }

@@ -121,7 +121,7 @@ impl Column {
     pub(crate) fn named(name: &[u8]) -> Option<Self> {
         let name = name.trim_ascii();
         // Told apart by length first: most text is no column.
-        if !(4..=22).contains(&name.len()) {
+        if !(4..=22).contains(&name.len()) || !name.first().is_some_and(u8::is_ascii_alphabetic) {
             return None;
         }
         Self::ALL.into_iter().find(|column| column.name().as_bytes().eq_ignore_ascii_case(name))

@@ -53,11 +53,8 @@ impl Mark {
 pub(super) fn at(text: &[u8]) -> Mark {
     match text.first() {
         Some(b'0'..=b'9') => {
-            if let Some(length) = heading::frame(text) {
-                Mark::Frame(length)
-            } else {
-                comma(text)
-            }
+            // No name of a column begins with a figure.
+            heading::frame(text).map_or(Mark::Text, Mark::Frame)
         }
         Some(b'{') => Mark::JsonLine,
         Some(b'A'..=b'Z') => letters(text),

@@ -17,6 +17,7 @@ pub(super) struct Ends {
     /// The next mark after `mark_from`.
     mark: usize,
     mark_from: usize,
+    mark_is: Option<Mark>,
 }
 
 impl Ends {
@@ -56,39 +57,63 @@ impl Ends {
             return self.mark;
         }
         self.mark_from = from;
-        self.mark = find_mark(bytes, from);
-        self.mark
+        let (at, found) = find_mark(bytes, from);
+        self.mark = at;
+        self.mark_is = Some(found);
+        at
+    }
+
+    /// The mark at a place, where the search for the next one has stopped there already.
+    pub(super) fn known(&self, at: usize) -> Option<Mark> {
+        self.mark_is.filter(|found| at == self.mark && *found != Mark::Text)
     }
 }
 
-fn find_mark(bytes: &[u8], from: usize) -> usize {
+/// Bytes that are looked at more closely in the midst of a line: line ends, SOH, ETX, and the first
+/// letters of the binary messages' magic.
+const TELLING: [bool; 256] = {
+    let mut table = [false; 256];
+    table[b'\n' as usize] = true;
+    table[b'\r' as usize] = true;
+    table[1] = true;
+    table[3] = true;
+    table[b'B' as usize] = true;
+    table[b'G' as usize] = true;
+    table
+};
+
+fn find_mark(bytes: &[u8], from: usize) -> (usize, Mark) {
+    let mut at = from;
     let mut line_begins = false;
-    let rest = bytes.get(from..).unwrap_or_default();
-    for (i, &byte) in rest.iter().enumerate() {
-        match byte {
-            b'\n' | b'\r' => line_begins = true,
-            1 | 3 if i > 0 => return from + i,
-            _ if is_blank(byte) => {}
-            b'B' | b'G' if i > 0 => {
-                let here = rest.get(i..).unwrap_or_default();
-                if mark::is_bufr(here)
-                    || mark::is_grib(here)
-                    || (line_begins && mark::at(here) != Mark::Text)
-                {
-                    return from + i;
-                }
-                line_begins = false;
+    while let Some(rest) = bytes.get(at..) {
+        if line_begins {
+            let text = rest.iter().position(|&byte| !is_blank(byte) || is_envelope(byte));
+            let Some(blanks) = text else { break };
+            at += blanks;
+            line_begins = false;
+            let found = mark::at(bytes.get(at..).unwrap_or_default());
+            if found != Mark::Text {
+                return (at, found);
             }
-            _ if line_begins => {
-                if mark::at(rest.get(i..).unwrap_or_default()) != Mark::Text {
-                    return from + i;
-                }
-                line_begins = false;
-            }
+            continue;
+        }
+        let Some(skipped) = rest.iter().position(|&byte| TELLING[usize::from(byte)]) else { break };
+        at += skipped;
+        let here = bytes.get(at..).unwrap_or_default();
+        match here.first() {
+            Some(b'\n' | b'\r') => line_begins = true,
+            Some(&byte) if is_envelope(byte) && at > from => return (at, Mark::Text),
+            Some(b'B') if at > from && mark::is_bufr(here) => return (at, Mark::Bufr),
+            Some(b'G') if at > from && mark::is_grib(here) => return (at, Mark::Grib),
             _ => {}
         }
+        at += 1;
     }
-    bytes.len()
+    (bytes.len(), Mark::Text)
+}
+
+const fn is_envelope(byte: u8) -> bool {
+    matches!(byte, 1 | 3)
 }
 
 fn line_end(bytes: &[u8], start: usize, limit: usize) -> usize {
