@@ -124,12 +124,12 @@ fn damage(bytes: &mut Vec<u8>, other: &[u8], dice: &mut Dice) {
     }
 }
 
-fn good(bytes: &[u8], context: &Context, explained_too: bool) -> bool {
-    let reading = read(bytes, context);
+fn good(bytes: &[u8], context: Context, explained_too: bool) -> bool {
+    let reading = read(bytes, &context);
     let count = reading.bytes;
     let mut reports = 0;
     if explained_too {
-        explain(bytes, context, &mut |explained| {
+        explain(bytes, &context, &mut |explained| {
             reports += usize::from(explained.report().is_some());
         });
     }
@@ -166,7 +166,7 @@ pub(crate) fn run(words: &[String]) {
             let other = &seeds[dice.below(seeds.len())];
             damage(&mut bytes, other, &mut dice);
             let explained_too = execution % 16 == 0;
-            let outcome = catch_unwind(AssertUnwindSafe(|| good(&bytes, &context, explained_too)));
+            let outcome = catch_unwind(AssertUnwindSafe(|| good(&bytes, context, explained_too)));
             if !matches!(outcome, Ok(true)) {
                 findings += 1;
                 if findings <= 5 {
