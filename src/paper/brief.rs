@@ -2,14 +2,17 @@
 
 use std::fmt::Write as _;
 
-use super::words::{clean, measured, place_words, signed, wrapped};
+use super::words::{clean, measured, place_words, plain, signed, wind_words, wrapped};
 use crate::picture::Picture;
 use crate::quantity::{kt_from_m_s, nm_from_km};
 use crate::systems::{Kind, Phase, System};
-use crate::winds::Method;
+use crate::winds::beaufort::force_of_kt;
+use crate::winds::{Method, StationWind};
 
 /// Widest line, characters.
 pub const WIDTH: usize = 72;
+/// Above this ratio of the analysis error to that of the first guess nothing is trusted (ANA-5).
+const WEAK_RATIO: f64 = 0.7;
 /// Rows of each list.
 const ROWS: usize = 6;
 
@@ -25,6 +28,7 @@ pub fn brief_text(picture: &Picture) -> String {
     alerts(picture, &mut out);
     systems(picture, Kind::Low, &mut out);
     systems(picture, Kind::High, &mut out);
+    watch_points(picture, &mut out);
     winds(picture, &mut out);
     convergence(picture, &mut out);
     tendencies(picture, &mut out);
@@ -35,7 +39,7 @@ pub fn brief_text(picture: &Picture) -> String {
 
 fn line(text: &str, out: &mut String) {
     // Writing to a string cannot fail.
-    let _ = writeln!(out, "{}", text.trim_end());
+    let _ = writeln!(out, "{}", plain(text.trim_end()));
 }
 
 fn paragraph(text: &str, indent: usize, out: &mut String) {
@@ -182,6 +186,44 @@ fn describe(system: &System, out: &mut String) {
     }
 }
 
+/// The expected wind, marked where the analysis behind it is weak; `-` where there is none.
+fn expected_words(wind: &StationWind) -> String {
+    let weak = if wind.error_ratio > WEAK_RATIO { ", weak" } else { "" };
+    wind.winds.surface.map_or_else(|| "-".to_owned(), |wind| wind_words(wind) + weak)
+}
+
+fn watch_points(picture: &Picture, out: &mut String) {
+    let points = || picture.winds.iter().filter(|wind| wind.platform.is_none());
+    if points().next().is_none() {
+        return;
+    }
+    section("WATCH POINTS (wind expected at 10 m from the pressure pattern)", out);
+    for wind in points() {
+        let expected = wind.winds.surface.map_or_else(
+            || "not known: no analysis there".to_owned(),
+            |surface| {
+                let error = wind.winds.surface_error_m_s.map_or_else(String::new, |error_m_s| {
+                    format!(" +- {:.0}", kt_from_m_s(error_m_s).ceil())
+                });
+                let force = force_of_kt(kt_from_m_s(surface.speed_m_s));
+                format!("{}{error}, force {force}", wind_words(surface))
+            },
+        );
+        let mut doubts = String::new();
+        if wind.error_ratio > WEAK_RATIO {
+            doubts.push_str("; few reports near, do not trust");
+        }
+        if wind.winds.low_latitude {
+            doubts.push_str("; low latitude, pressure says little of wind");
+        }
+        if wind.winds.capped {
+            doubts.push_str("; gradient too strong for the curvature");
+        }
+        let place = place_words(wind.position);
+        paragraph(&format!("{}  {place}  {expected}{doubts}.", wind.station), 2, out);
+    }
+}
+
 fn winds(picture: &Picture, out: &mut String) {
     section("STRONGEST WINDS REPORTED (expected from pressure in brackets)", out);
     let mut rows: Vec<_> =
@@ -191,16 +233,12 @@ fn winds(picture: &Picture, out: &mut String) {
         speed.then_with(|| one.1.station.cmp(&other.1.station))
     });
     for (observed, wind) in rows.iter().take(ROWS) {
-        let expected = wind.winds.surface.map_or_else(
-            || "-".to_owned(),
-            |wind| format!("{:03.0}/{:.0} kt", wind.from_deg, kt_from_m_s(wind.speed_m_s)),
-        );
         let text = format!(
-            "{:<8} {}  {:03.0}/{:.0} kt ({expected}) {}",
+            "{:<8} {}  {} ({}) {}",
             wind.station,
             place_words(wind.position),
-            observed.from_deg,
-            kt_from_m_s(observed.speed_m_s),
+            wind_words(*observed),
+            expected_words(wind),
             wind.explanation
         );
         paragraph_keeping(&text, out);

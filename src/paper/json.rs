@@ -18,9 +18,10 @@
 use serde_json::{Value, json};
 
 use super::brief::CAUTION;
+use super::words::from_whole_deg;
 use crate::field::Grid;
 use crate::picture::Picture;
-use crate::quantity::{kt_from_m_s, whole_nearest};
+use crate::quantity::kt_from_m_s;
 use crate::systems::{Measured, System};
 use crate::tendency::TendencyRow;
 use crate::winds::{ConvergenceArea, StationWind, Wind};
@@ -192,7 +193,7 @@ fn tendency(row: &TendencyRow) -> Value {
 fn blowing(wind: Option<Wind>) -> Value {
     wind.map_or(Value::Null, |wind| {
         json!({
-            "from_deg": whole_nearest(wind.from_deg),
+            "from_deg": from_whole_deg(wind),
             "speed_kt": number(kt_from_m_s(wind.speed_m_s), 1),
         })
     })

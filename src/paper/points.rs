@@ -2,6 +2,7 @@
 
 use std::io::{self, Write};
 
+use super::words::from_whole_deg;
 use crate::picture::{Picture, PointValues};
 use crate::quantity::kt_from_m_s;
 use crate::sphere::Position;
@@ -91,7 +92,7 @@ fn cells(found: &PointValues) -> String {
     let wind = |wind: Option<Wind>| {
         wind.map_or_else(
             || ",".to_owned(),
-            |wind| format!("{:.0},{:.1}", wind.from_deg, kt_from_m_s(wind.speed_m_s)),
+            |wind| format!("{},{:.1}", from_whole_deg(wind), kt_from_m_s(wind.speed_m_s)),
         )
     };
     let divergence =

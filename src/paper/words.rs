@@ -1,8 +1,33 @@
 //! Small pieces of text that brief and exports share.
 
+use crate::quantity::{kt_from_m_s, whole_nearest};
 use crate::systems::Measured;
+use crate::winds::Wind;
 
 pub use crate::alert::place_words;
+
+/// Where a wind blows from in whole degrees, 1 to 360; 0 is kept for calm (METHODS WND-13).
+pub fn from_whole_deg(wind: Wind) -> i64 {
+    if wind.speed_m_s == 0.0 {
+        return 0;
+    }
+    let from_deg = whole_nearest(wind.from_deg).rem_euclid(360);
+    if from_deg == 0 { 360 } else { from_deg }
+}
+
+/// `270/34 kt`, or `calm`.
+pub fn wind_words(wind: Wind) -> String {
+    let speed_kt = kt_from_m_s(wind.speed_m_s);
+    if speed_kt < 0.5 {
+        return "calm".to_owned();
+    }
+    format!("{:03}/{speed_kt:.0} kt", from_whole_deg(wind))
+}
+
+/// Printable ASCII: everything else, control characters above all, becomes `?`.
+pub fn plain(text: &str) -> String {
+    text.chars().map(|c| if c == ' ' || c.is_ascii_graphic() { c } else { '?' }).collect()
+}
 
 /// `+1.4` or `-` where unknown.
 pub fn signed(value: Option<f64>, decimals: usize) -> String {
@@ -65,5 +90,21 @@ mod tests {
         assert_eq!(signed(Some(-0.06), 1), "-0.1");
         assert_eq!(signed(None, 1), "-");
         assert_eq!(place_words(crate::sphere::Position::clamped(-4.25, 179.96)), "04.2S 180.0E");
+    }
+
+    /// Common practice, no source: north is 360, and 0 means calm.
+    #[test]
+    fn a_northerly_is_360_and_only_calm_is_0() {
+        let words = |from_deg, speed_m_s| wind_words(Wind { from_deg, speed_m_s });
+        assert_eq!(words(0.3, 10.0), "360/19 kt");
+        assert_eq!(words(359.6, 10.0), "360/19 kt");
+        assert_eq!(words(0.6, 10.0), "001/19 kt");
+        assert_eq!(words(0.0, 0.0), "calm");
+        assert_eq!(from_whole_deg(Wind { from_deg: 0.2, speed_m_s: 0.1 }), 360);
+    }
+
+    #[test]
+    fn text_from_outside_cannot_drive_a_terminal() {
+        assert_eq!(plain("Cape \u{1b}[31m\u{e9}\n"), "Cape ?[31m??");
     }
 }
