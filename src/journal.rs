@@ -179,8 +179,8 @@ impl Journal {
                     Err(_) => unreadable += 1,
                 }
             }
-            let names = self.kept("names")?.unwrap_or_default();
-            let decisions = self.kept("decisions")?.unwrap_or_default();
+            let names = self.kept("names", &mut unreadable)?.unwrap_or_default();
+            let decisions = self.kept("decisions", &mut unreadable)?.unwrap_or_default();
             Ok(Resumed { held, names, decisions, unreadable: 0 })
         };
         let mut read = read;
@@ -188,12 +188,20 @@ impl Journal {
         Ok(Resumed { unreadable, ..resumed })
     }
 
-    fn kept<T: serde::de::DeserializeOwned>(&self, what: &str) -> rusqlite::Result<Option<T>> {
+    fn kept<T: serde::de::DeserializeOwned>(
+        &self,
+        what: &str,
+        unreadable: &mut usize,
+    ) -> rusqlite::Result<Option<T>> {
         let text: Option<String> = self
             .connection
             .query_row("SELECT value FROM kept WHERE what = ?1", [what], |row| row.get(0))
             .optional()?;
-        Ok(text.and_then(|text| serde_json::from_str(&text).ok()))
+        let value = text.as_deref().map(serde_json::from_str::<T>);
+        if matches!(value, Some(Err(_))) {
+            *unreadable += 1;
+        }
+        Ok(value.and_then(Result::ok))
     }
 
     fn keep<T: serde::Serialize>(&self, what: &str, value: &T) -> Result<(), JournalError> {
@@ -312,8 +320,12 @@ mod tests {
             .connection
             .execute("INSERT INTO report (hour, content, row) VALUES (1, 'x', '{broken')", [])
             .expect("put in");
+        journal
+            .connection
+            .execute("INSERT INTO kept (what, value) VALUES ('decisions', '{broken')", [])
+            .expect("put in");
         let resumed = journal.resume().expect("resumed");
-        assert_eq!(resumed.unreadable, 1);
+        assert_eq!(resumed.unreadable, 2);
         assert_eq!(resumed.held.counts().held, 1);
     }
 

@@ -119,6 +119,9 @@ pub fn render(
         strip::waiting(buf, rect(layout.summary), look);
         text::centred(buf, area, "no picture yet: waiting for the first reports", base);
         strip::keys(buf, rect(layout.keys), &desk, None, look);
+        if let Some(line) = desk.help {
+            help::draw(&desk, look, line, area, buf);
+        }
         return;
     };
     let scene = Scene { picture, desk: &desk, settings, look };
@@ -132,7 +135,7 @@ pub fn render(
     }
     strip::keys(buf, rect(layout.keys), &desk, Some(picture), look);
     if let Some(line) = desk.help {
-        help::draw(scene, line, area, buf);
+        help::draw(&desk, look, line, area, buf);
     }
 }
 

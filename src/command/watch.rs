@@ -309,7 +309,8 @@ impl Practice {
         let begin: Instant = start.plus_s(ahead_s);
         let folder =
             std::env::temp_dir().join(format!("glasskeeper-practice-{}", std::process::id()));
-        std::fs::create_dir_all(&folder).with_context(|| folder.display().to_string())?;
+        // Never one that is there already: it is removed at the end, and its files would be read.
+        std::fs::create_dir(&folder).with_context(|| folder.display().to_string())?;
         let (past, future): (Vec<_>, Vec<_>) = files.into_iter().partition(|f| f.due <= begin);
         for file in &past {
             put(&folder, file).with_context(|| folder.display().to_string())?;

@@ -72,6 +72,7 @@ impl Watchlist {
             if is_passed_over(name) {
                 continue;
             }
+            let first_sight = !self.files.contains_key(name);
             let known = self
                 .files
                 .entry(name.clone())
@@ -87,8 +88,9 @@ impl Watchlist {
             let stood = now.seconds_since(known.since) >= SETTLING_S;
             let age_s = now.seconds_since(stamp.modified());
             // A clock that runs behind the file server's makes ages negative: then only standing
-            // still counts.
-            let old = known.since == now && age_s >= SETTLING_S;
+            // still counts. So it does for a file that was seen to change: its time of
+            // modification may be behind, or set by whoever copied it.
+            let old = first_sight && age_s >= SETTLING_S;
             if stood || old || finished(name) {
                 known.read = true;
                 ready.push(name.clone());
@@ -152,6 +154,26 @@ mod tests {
         assert_eq!(look(&mut list, &[("a", 5, 50)], 100), ["a"]);
         assert!(look(&mut list, &[("a", 5, 40)], 101).is_empty());
         assert_eq!(look(&mut list, &[("a", 5, 40)], 103), ["a"]);
+    }
+
+    #[test]
+    fn a_file_growing_on_a_server_whose_clock_is_behind_waits() {
+        let mut list = Watchlist::new();
+        assert!(look(&mut list, &[("a", 10, 99)], 100).is_empty());
+        // Its times are 30 s behind ours from here on: they do not make it complete.
+        assert!(look(&mut list, &[("a", 20, 71)], 101).is_empty());
+        assert!(look(&mut list, &[("a", 30, 72)], 102).is_empty());
+        assert_eq!(look(&mut list, &[("a", 30, 72)], 104), ["a"]);
+    }
+
+    #[test]
+    fn a_file_that_could_not_be_read_is_tried_again() {
+        let mut list = Watchlist::new();
+        assert_eq!(look(&mut list, &[("a", 5, 50)], 100), ["a"]);
+        list.unread("a");
+        assert!(list.waits());
+        assert_eq!(look(&mut list, &[("a", 5, 50)], 102), ["a"]);
+        assert!(look(&mut list, &[("a", 5, 50)], 104).is_empty());
     }
 
     #[test]

@@ -4,8 +4,8 @@ use ratatui::buffer::Buffer;
 use ratatui::layout::Rect;
 
 use super::theme::Role;
-use super::{Scene, text};
-use crate::desk::keys;
+use super::{Look, text};
+use crate::desk::{Desk, keys};
 
 enum Line {
     Head(String),
@@ -13,13 +13,12 @@ enum Line {
 }
 
 /// Draws the help over the whole screen but the bottom line, from a line on.
-pub(super) fn draw(scene: Scene<'_>, from: usize, area: Rect, buf: &mut Buffer) {
-    let look = scene.look;
+pub(super) fn draw(desk: &Desk, look: &Look, from: usize, area: Rect, buf: &mut Buffer) {
     let area = Rect { height: area.height.saturating_sub(1), ..area };
     text::fill(buf, area, look.style(Role::Text));
     let width = usize::from(area.width.saturating_sub(2));
-    let (list, own) = keys::here(scene.desk.focus);
-    let mut lines = vec![Line::Head(format!("Keys here: {}", scene.desk.focus.word()))];
+    let (list, own) = keys::here(desk.focus);
+    let mut lines = vec![Line::Head(format!("Keys here: {}", desk.focus.word()))];
     let key_lines = |lines: &mut Vec<Line>, keys: keys::Keys| {
         for (key, what) in keys {
             let broken = text::lines(what, width.saturating_sub(12).max(8));

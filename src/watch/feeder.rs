@@ -13,7 +13,7 @@ use super::clock;
 use super::worker::Task;
 use crate::feed::batch::unreadable;
 use crate::feed::completeness::Watchlist;
-use crate::feed::folder::{look, read};
+use crate::feed::folder::{FolderError, look, read};
 use crate::feed::intake::{ReadFile, read_file};
 use crate::feed::received::received;
 use crate::instant::Instant;
@@ -24,6 +24,8 @@ const POLL: Duration = Duration::from_secs(2);
 const RESCAN: Duration = Duration::from_secs(60);
 /// After word came, a moment for more of it.
 const GATHER: Duration = Duration::from_millis(20);
+/// Longest such moment in all: a file written to without end must not keep the others waiting.
+const GATHER_MAX: Duration = Duration::from_millis(200);
 
 /// What wakes the feeder.
 enum Wake {
@@ -55,13 +57,22 @@ pub fn run(folder: &Path, poll: bool, limit: &dyn Fn() -> Instant, out: &Sender<
                     Some((name, received(name, stamp.modified(), Some(limit()))))
                 })
                 .collect();
-            let read: Vec<ReadFile> = files
+            let (read, again): (Vec<ReadFile>, Vec<bool>) = files
                 .par_iter()
                 .map(|(name, received)| match read(folder, name) {
-                    Ok(bytes) => read_file(name, &bytes, *received),
-                    Err(error) => unreadable(name, *received, &error),
+                    Ok(bytes) => (read_file(name, &bytes, *received), false),
+                    Err(error) => {
+                        // What is too large stays so; anything else may pass.
+                        let again = !matches!(error, FolderError::TooLarge { .. });
+                        (unreadable(name, *received, &error), again)
+                    }
                 })
-                .collect();
+                .unzip();
+            for ((name, _), again) in files.iter().zip(again) {
+                if again {
+                    list.unread(name);
+                }
+            }
             if !read.is_empty() && out.send(Task::Files(read)).is_err() {
                 return;
             }
@@ -79,6 +90,7 @@ pub fn run(folder: &Path, poll: bool, limit: &dyn Fn() -> Instant, out: &Sender<
 /// Waits for word or for `patience`; false where the senders are gone.
 fn wait(woken: &Receiver<Wake>, patience: Duration, finished: &mut BTreeSet<String>) -> bool {
     let mut patience = patience;
+    let mut gathering_until = None;
     loop {
         match woken.recv_timeout(patience) {
             Ok(Wake::Finished(name)) => {
@@ -88,7 +100,12 @@ fn wait(woken: &Receiver<Wake>, patience: Duration, finished: &mut BTreeSet<Stri
             Err(RecvTimeoutError::Timeout) => return true,
             Err(RecvTimeoutError::Disconnected) => return false,
         }
-        patience = GATHER;
+        let now = clock::steady();
+        let until = *gathering_until.get_or_insert(now + GATHER_MAX);
+        if now >= until {
+            return true;
+        }
+        patience = GATHER.min(until - now);
     }
 }
 
@@ -117,4 +134,40 @@ fn arm(folder: &Path, wake: &Sender<Wake>) -> Option<notify::RecommendedWatcher>
     .ok()?;
     watcher.watch(folder, RecursiveMode::NonRecursive).ok()?;
     Some(watcher)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Word that never stops coming ends the wait all the same: the sender goes on until the wait
+    /// is over, and only then lets go.
+    #[test]
+    fn word_without_end_does_not_keep_the_folder_from_being_looked_at() {
+        let (wake, woken) = channel();
+        let over = std::sync::atomic::AtomicBool::new(false);
+        std::thread::scope(|scope| {
+            scope.spawn(|| {
+                while !over.load(std::sync::atomic::Ordering::Relaxed) {
+                    let _ = wake.send(Wake::Something);
+                    std::thread::yield_now();
+                }
+            });
+            let mut finished = BTreeSet::new();
+            assert!(wait(&woken, RESCAN, &mut finished));
+            over.store(true, std::sync::atomic::Ordering::Relaxed);
+        });
+    }
+
+    #[test]
+    fn files_that_were_finished_are_remembered_and_a_lost_sender_ends_it() {
+        let (wake, woken) = channel();
+        wake.send(Wake::Finished("a".to_owned())).expect("sent");
+        wake.send(Wake::Finished("b".to_owned())).expect("sent");
+        let mut finished = BTreeSet::new();
+        assert!(wait(&woken, RESCAN, &mut finished));
+        assert_eq!(finished.into_iter().collect::<Vec<_>>(), ["a", "b"]);
+        drop(wake);
+        assert!(!wait(&woken, RESCAN, &mut BTreeSet::new()));
+    }
 }

@@ -20,6 +20,12 @@ struct Session {
     bytes: Vec<u8>,
 }
 
+fn begin() -> std::time::Instant {
+    #[expect(clippy::disallowed_methods, reason = "the test bounds its wait")]
+    let now = std::time::Instant::now();
+    now
+}
+
 fn size(columns: u16, rows: u16) -> PtySize {
     PtySize { rows, cols: columns, pixel_width: 0, pixel_height: 0 }
 }
@@ -59,8 +65,10 @@ impl Session {
     /// Reads until the condition holds on the screen; shows the screen where it never does.
     #[track_caller]
     fn wait(&mut self, what: &str, condition: impl Fn(&vt100::Screen) -> bool) {
+        // For the whole wait: a screen that shows the minute never falls silent.
+        let begun = begin();
         while !condition(self.screen.screen()) {
-            match self.output.recv_timeout(DEADLINE) {
+            match self.output.recv_timeout(DEADLINE.saturating_sub(begun.elapsed())) {
                 Ok(piece) => {
                     self.screen.process(&piece);
                     self.bytes.extend(piece);
@@ -121,6 +129,9 @@ fn it_starts_follows_a_new_file_helps_resizes_and_leaves_the_terminal_as_it_was(
     feed(folder.path(), "two.csv", 30, 6);
     session.wait_for("36 rep");
     session.type_keys("?");
+    session.wait_for("Keys here: Chart");
+    // Three pages down stand the cautions.
+    session.type_keys("   ");
     session.wait_for("not a warning service");
     session.type_keys("\u{1b}");
     session.wait("closed the help", |screen| !screen.contents().contains("not a warning service"));
@@ -142,7 +153,7 @@ fn it_starts_follows_a_new_file_helps_resizes_and_leaves_the_terminal_as_it_was(
 fn a_signal_ends_it_with_the_terminal_restored() {
     let folder = tempfile::tempdir().expect("a folder");
     let mut session = Session::start(folder.path(), &["--no-journal", "--colour", "never"], 80, 24);
-    session.wait_for("no report");
+    session.wait_for("0 reports");
     let pid = session.child.process_id().expect("a process");
     let status = std::process::Command::new("kill")
         .args(["-TERM", &pid.to_string()])

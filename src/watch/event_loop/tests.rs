@@ -103,7 +103,13 @@ fn q_leaves_and_a_signal_ends() {
 
 #[test]
 fn help_opens_and_trouble_is_shown() {
+    // Before there is a Picture, too. The cautions stand at the end: three pages down.
+    let mut keys = vec![key(Code::Char('?'))];
     let (_, paper, _) = run(vec![key(Code::Char('?'))], 3);
+    let last = paper.frames.last().expect("a frame");
+    assert!(last.contains("Keys here: Chart"), "{last}");
+    keys.extend((0..3).map(|_| key(Code::PageDown)));
+    let (_, paper, _) = run(keys, 3);
     let last = paper.frames.last().expect("a frame");
     assert!(last.contains("not a warning service"), "{last}");
     let (_, paper, _) = run(vec![Message::Trouble("the disk is full".to_owned())], 3);
