@@ -228,8 +228,14 @@ impl Workshop {
                 _ => (analysis.fingerprint, Arc::new(HourCentres::of(analysis))),
             })
             .collect();
-        let centres: Vec<Arc<HourCentres>> =
-            made.iter().map(|(_, centres)| Arc::clone(centres)).collect();
+        // An hour that few reported in shows the hours before it once more, not where the centres
+        // have gone: it is left out, or a six-hourly feed would make every system stand and jump.
+        let centres: Vec<Arc<HourCentres>> = hours
+            .iter()
+            .zip(&made)
+            .filter(|(analysis, _)| analysis.hour == valid || is_informed(analysis))
+            .map(|(_, (_, centres))| Arc::clone(centres))
+            .collect();
         self.centres = hours.iter().map(|analysis| analysis.hour).zip(made).collect();
         let reports: Vec<Position> = by_hour
             .get(&valid)
@@ -265,6 +271,12 @@ impl Workshop {
         self.fields = hours.iter().map(|analysis| analysis.hour).zip(made).collect();
         out
     }
+}
+
+/// Whether at least a tenth of the pressures that an analysis used are of its own hour.
+fn is_informed(analysis: &HourAnalysis) -> bool {
+    let own = analysis.innovations.iter().filter(|one| one.pressure_hpa.is_some()).count();
+    own > 0 && own * 10 >= analysis.pressures_used
 }
 
 /// Observations by hour up to the newest hour, without those of the future.

@@ -35,3 +35,12 @@ pub(crate) fn look(held: &Held, settings: &Settings, now: Instant) -> Picture {
     };
     picture(&inputs, now).0
 }
+
+/// The value below which a share of a list of numbers lies.
+pub(crate) fn quantile(values: &[f64], share: f64) -> f64 {
+    let mut sorted = values.to_vec();
+    sorted.sort_by(f64::total_cmp);
+    let last = sorted.len().saturating_sub(1) as f64;
+    let index = glasskeeper::quantity::index_nearest(share * last);
+    sorted.get(index).copied().unwrap_or(f64::NAN)
+}

@@ -14,6 +14,8 @@ mod rehearse_observed;
 mod rehearse_read;
 mod rehearse_samples;
 mod rehearse_truth;
+mod scenario;
+mod storm_1996;
 mod tendency_real_day;
 mod terminal;
 mod winds_global;
