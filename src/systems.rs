@@ -5,13 +5,16 @@ use serde::{Deserialize, Serialize};
 use crate::instant::{Hour, Instant};
 use crate::sphere::Position;
 
+pub mod basin;
 pub mod centre;
 pub mod follow;
 pub mod motion;
 pub mod names;
 pub mod outlook;
 pub mod rating;
+pub mod strength;
 pub mod track;
+pub mod verification;
 
 /// High or low.
 #[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug, Serialize, Deserialize)]

@@ -1,7 +1,7 @@
 //! Names of systems: short, stable, not used again within ten days.
 //!
 //! A name is the kind, the day of the month of birth, and a letter for the place of birth: one of
-//! 24 sectors of 15 degrees of longitude from the date line eastward, the next free letter where
+//! 23 sectors of longitude from the date line eastward, the next free letter where
 //! two are born in one sector on one day. So a name follows from the birth alone; a late report
 //! that adds another birth elsewhere changes no name. What the rolling window has forgotten is
 //! kept in the [`NameBook`].
@@ -17,7 +17,7 @@ use crate::quantity::index_nearest;
 use crate::sphere::Position;
 
 /// Letters of the sectors; those that a tired eye takes for a figure are left out.
-const LETTERS: &[u8; 24] = b"abcdefghjkmnpqrstuvwxyz+";
+const LETTERS: &[u8; 23] = b"abcdefghjkmnpqrstuvwxyz";
 /// Days within which a name is not used again.
 const REST_H: i64 = 240;
 /// A settled point of the book and a track's point of the same hour belong together within this, km.
@@ -59,13 +59,16 @@ pub fn name_tracks(tracks: &[Track], book: &NameBook) -> Vec<String> {
     }
     let mut used: BTreeMap<String, Hour> =
         book.entries.iter().map(|(name, entry)| (name.clone(), entry.last())).collect();
-    let mut out = Vec::with_capacity(tracks.len());
-    for (track, name) in tracks.iter().zip(names) {
-        let name = name.unwrap_or_else(|| fresh(track, &used));
+    // In the order of confirmation: the next hour's confirmations come after all that there are, and
+    // change none of their names.
+    let mut order: Vec<usize> = (0..tracks.len()).collect();
+    order.sort_by_key(|at| (tracks[*at].confirmed, tracks[*at].id));
+    for at in order {
+        let track = &tracks[at];
+        let name = names[at].get_or_insert_with(|| fresh(track, &used));
         used.insert(name.clone(), track.newest().hour);
-        out.push(name);
     }
-    out
+    names.into_iter().map(Option::unwrap_or_default).collect()
 }
 
 fn shared(track: &Track, entry: &NameEntry) -> usize {
@@ -89,7 +92,8 @@ fn fresh(track: &Track, used: &BTreeMap<String, Hour>) -> String {
     };
     let day = day_of_month(birth.instant());
     let longitude_deg = track.steps[0].state.position.longitude_deg();
-    let sector = index_nearest(((longitude_deg + 180.0) / 15.0).floor()) % LETTERS.len();
+    let turn = (longitude_deg + 180.0) / 360.0 * LETTERS.len() as f64;
+    let sector = index_nearest(turn.floor()) % LETTERS.len();
     for round in 0..LETTERS.len() {
         let sector = LETTERS[(sector + round) % LETTERS.len()];
         let name = format!("{letter}{day}{}", char::from(sector));
@@ -98,7 +102,7 @@ fn fresh(track: &Track, used: &BTreeMap<String, Hour>) -> String {
             return name;
         }
     }
-    // More than 24 births of a kind in a day: numbers go on where letters end.
+    // More than 23 births of a kind in a day: numbers go on where letters end.
     let mut number = 1;
     loop {
         let name = format!("{letter}{day}-{number}");
@@ -132,7 +136,7 @@ pub fn settled_book(
 ) -> NameBook {
     let mut next = book.clone();
     for (track, name) in tracks.iter().zip(names) {
-        if !track.confirmed || track.since() > settled {
+        if track.confirmed.is_none() || track.since() > settled {
             continue;
         }
         let entry = next.entries.entry(name.clone()).or_insert_with(|| NameEntry {

@@ -1,29 +1,44 @@
 //! Following centres from hour to hour: assignment, births, gaps, ends, splits and merges.
 
+use std::sync::Arc;
+
 use pathfinding::kuhn_munkres::kuhn_munkres_min;
 use pathfinding::matrix::Matrix;
 
-use super::centre::Centre;
-use super::motion::State;
-use super::{Kind, TrackEvent};
+use super::Kind;
+use super::centre::{Centre, HourCentres};
+use super::motion::{Sighting, State};
 use crate::instant::Hour;
 use crate::quantity::whole_nearest;
+use crate::sphere::Position;
 
 /// Gate of the association: chi-squared of three degrees of freedom at 99 % (METHODS TRK-4).
 pub const GATE: f64 = 11.344_87;
+/// Gate of the second round, among tracks and centres that the first left over: one in a hundred
+/// finds lies beyond the first gate by chance, and would cut most tracks within four days.
+const SECOND_GATE: f64 = 25.0;
 /// Fastest believed motion of a centre, km/h (60 kt, TRK-4).
 const SPEED_MAX_KM_H: f64 = 111.0;
 /// Slack on that limit, km: two places are each uncertain.
 const SPEED_SLACK_KM: f64 = 200.0;
-/// Hours without a find after which a followed track ends (TRK-4: two analyses or 9 h).
+/// A followed track ends after so many hours and so many analyses without a find (TRK-4).
 const COAST_MAX_H: i64 = 9;
+const COAST_MAX_MISSES: usize = 2;
+/// Where the analysis can be trusted and shows no centre, or where another system has taken the
+/// place, a track is withdrawn after so many hours; until it ends it may still be found again.
+const WITHDRAW_H: i64 = 4;
+/// The same for one that was not beyond doubt when it was last found.
+const WITHDRAW_WEAK_H: i64 = 2;
+const WEAK_CONFIDENCE: f64 = 0.99;
+/// A track that loses its centre to another within this distance of its own place merges, km.
+const MERGE_KM: f64 = 250.0;
 /// Analyses missed in a row after which an unconfirmed track is dropped.
 const TENTATIVE_MISSES_MAX: usize = 1;
 /// Finds after which a track is confirmed.
 const HITS_TO_CONFIRM: usize = 2;
 /// Confidence of a centre needed for a birth, and for a confirmation.
 const BIRTH_CONFIDENCE: f64 = 0.75;
-const CONFIRM_CONFIDENCE: f64 = 0.90;
+const CONFIRM_CONFIDENCE: f64 = 0.95;
 /// Least errors of an observed centre: the finder and the analysis are no better than this.
 const POSITION_ERROR_MIN_KM: f64 = 15.0;
 const PRESSURE_ERROR_MIN_HPA: f64 = 0.3;
@@ -39,41 +54,68 @@ pub struct Step {
     pub observed: bool,
 }
 
+/// Something that happened to a track; other tracks are named by their [`Track::id`].
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub enum Happening {
+    /// It was first found.
+    Found,
+    /// It was first found within the last closed isobar of another.
+    SplitFrom(usize),
+    /// It was found again after it had been withdrawn.
+    FoundAgain,
+    /// Its centre is no longer to be told from that of another.
+    MergedInto(usize),
+    /// It is no longer found.
+    Lost,
+}
+
+/// How a track stands.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub enum Standing {
+    /// Followed.
+    Live,
+    /// Not shown any more, but may still be found again.
+    Withdrawn,
+    /// Ended.
+    Ended,
+}
+
 /// A track: the states of one centre.
 #[derive(Clone, PartialEq, Debug)]
 pub struct Track {
+    /// Number within the run, in order of birth.
+    pub id: usize,
     /// High or low.
     pub kind: Kind,
     /// Its states, ascending in time.
     pub steps: Vec<Step>,
-    /// Whether it has been found often enough to be shown as a system.
-    pub confirmed: bool,
+    /// When it had been found often enough to be shown as a system.
+    pub confirmed: Option<Hour>,
     /// The last centre found.
     pub centre: Centre,
-    /// What happened.
-    pub events: Vec<TrackEvent>,
-    /// Whether it has ended.
-    pub ended: bool,
+    /// What happened, and when.
+    pub happened: Vec<(Hour, Happening)>,
+    /// How it stands.
+    pub standing: Standing,
+    /// The other track that has the centre in its place, since it was last found.
+    rival: Option<usize>,
     hits: usize,
     misses: usize,
     best_confidence: f64,
 }
 
 impl Track {
-    fn born(hour: Hour, centre: &Centre, events: Vec<TrackEvent>) -> Self {
-        let state = State::first(
-            centre.position,
-            position_error_km(centre),
-            centre.pressure_hpa,
-            pressure_error_hpa(centre),
-        );
+    fn born(id: usize, hour: Hour, centre: &Centre) -> Self {
+        let state = State::first(&sighting(centre, centre.position));
         Self {
+            id,
             kind: centre.kind,
             steps: vec![Step { hour, state, observed: true }],
-            confirmed: false,
+            confirmed: None,
             centre: centre.clone(),
-            events,
-            ended: false,
+            happened: vec![(hour, Happening::Found)],
+            standing: Standing::Live,
+            rival: None,
             hits: 1,
             misses: 0,
             best_confidence: centre.confidence,
@@ -90,6 +132,11 @@ impl Track {
         self.steps[0].hour
     }
 
+    /// How often it was found.
+    pub const fn hits(&self) -> usize {
+        self.hits
+    }
+
     /// Hours since it was last found.
     pub fn coasted_h(&self) -> i64 {
         let last = self.steps.iter().rev().find(|step| step.observed).map(|step| step.hour);
@@ -102,19 +149,23 @@ impl Track {
             self.steps.push(Step { hour, state: *predicted, observed: false });
             return;
         };
-        let state = predicted.updated(
-            centre.position,
-            position_error_km(centre),
-            centre.pressure_hpa,
-            pressure_error_hpa(centre),
-        );
+        if self.standing == Standing::Withdrawn {
+            self.standing = Standing::Live;
+            self.happened.push((hour, Happening::FoundAgain));
+        }
+        let place = [GATE, SECOND_GATE]
+            .iter()
+            .find_map(|gate| self.place_in(predicted, hour, centre, *gate))
+            .map_or(centre.position, |found| found.1);
+        let state = predicted.updated(&sighting(centre, place));
         self.steps.push(Step { hour, state, observed: true });
         self.centre = centre.clone();
         self.hits += 1;
         self.misses = 0;
+        self.rival = None;
         self.best_confidence = self.best_confidence.max(centre.confidence);
         if self.hits >= HITS_TO_CONFIRM && self.best_confidence >= CONFIRM_CONFIDENCE {
-            self.confirmed = true;
+            self.confirmed.get_or_insert(hour);
         }
     }
 
@@ -124,139 +175,211 @@ impl Track {
             self.steps.pop();
         }
     }
+
+    /// Cost of taking a centre for this track, and the place it is taken at: the centre's own, or
+    /// that of a secondary where only that lies within the gate. `None` beyond the gate or the
+    /// fastest believed motion.
+    ///
+    /// The cost is the squared normalised distance and the logarithm of the covariance's
+    /// determinant, so that a track that knows less claims less (TRK-4).
+    fn place_in(
+        &self,
+        predicted: &State,
+        hour: Hour,
+        centre: &Centre,
+        gate: f64,
+    ) -> Option<(f64, Position)> {
+        let last = self.newest();
+        let elapsed_h = (hour.unix_h() - last.hour.unix_h()) as f64;
+        let reach_km = SPEED_MAX_KM_H * elapsed_h + SPEED_SLACK_KM;
+        std::iter::once(centre.position)
+            .chain(centre.secondaries.iter().map(|secondary| secondary.position))
+            .filter(|place| last.state.position.distance_km(*place) <= reach_km)
+            .find_map(|place| {
+                let (squared, determinant) = predicted.distance(&sighting(centre, place));
+                (squared <= gate).then(|| (squared + determinant.ln(), place))
+            })
+    }
 }
 
-fn position_error_km(centre: &Centre) -> f64 {
-    centre.position_error_km.max(POSITION_ERROR_MIN_KM)
-}
-
-fn pressure_error_hpa(centre: &Centre) -> f64 {
-    centre.pressure_error_hpa.max(PRESSURE_ERROR_MIN_HPA)
+/// A centre as the filter takes it, at one of its places.
+fn sighting(centre: &Centre, position: Position) -> Sighting {
+    Sighting {
+        position,
+        position_error_km: centre.position_error_km.max(POSITION_ERROR_MIN_KM),
+        pressure_hpa: centre.pressure_hpa,
+        pressure_error_hpa: centre.pressure_error_hpa.max(PRESSURE_ERROR_MIN_HPA),
+    }
 }
 
 /// Follows the centres of a run of hours, ascending; hours may be missing. Every track that was
-/// ever confirmed comes back, the ended ones too, in order of birth.
-pub fn follow(hours: &[(Hour, Vec<Centre>)]) -> Vec<Track> {
-    let mut live: Vec<Track> = Vec::new();
-    let mut past: Vec<Track> = Vec::new();
-    for (hour, centres) in hours {
+/// ever confirmed comes back, the ended ones too, and the unconfirmed ones of the last hour, in
+/// order of birth.
+pub fn follow(hours: &[Arc<HourCentres>]) -> Vec<Track> {
+    let mut run = Run::default();
+    for hour in hours {
         for kind in [Kind::Low, Kind::High] {
-            let found: Vec<&Centre> = centres.iter().filter(|centre| centre.kind == kind).collect();
-            step(&mut live, *hour, kind, &found);
+            run.step(hour, kind);
         }
-        let (ended, kept): (Vec<Track>, Vec<Track>) = live.into_iter().partition(|t| t.ended);
-        past.extend(ended.into_iter().filter(|track| track.confirmed));
-        live = kept;
+        run.bury();
     }
-    past.extend(live);
-    past.sort_by(|one, other| {
-        (one.since(), one.kind)
-            .cmp(&(other.since(), other.kind))
-            .then(one.steps[0].state.pressure_hpa.total_cmp(&other.steps[0].state.pressure_hpa))
-            .then(
-                one.steps[0]
-                    .state
-                    .position
-                    .longitude_deg()
-                    .total_cmp(&other.steps[0].state.position.longitude_deg()),
-            )
-    });
-    past
+    let mut tracks = run.past;
+    tracks.extend(run.live);
+    tracks.sort_by_key(|track| track.id);
+    tracks
 }
 
-fn step(live: &mut Vec<Track>, hour: Hour, kind: Kind, centres: &[&Centre]) {
-    let members: Vec<usize> = (0..live.len()).filter(|k| live[*k].kind == kind).collect();
-    let predicted: Vec<State> = members
+/// The tracks of a run so far.
+#[derive(Default)]
+struct Run {
+    live: Vec<Track>,
+    past: Vec<Track>,
+    born: usize,
+}
+
+impl Run {
+    fn step(&mut self, hour: &HourCentres, kind: Kind) {
+        let now = hour.hour;
+        let centres: Vec<&Centre> =
+            hour.centres.iter().filter(|centre| centre.kind == kind).collect();
+        let members: Vec<usize> =
+            (0..self.live.len()).filter(|k| self.live[*k].kind == kind).collect();
+        let predicted: Vec<State> = members
+            .iter()
+            .map(|k| {
+                let last = self.live[*k].newest();
+                last.state.predicted((now.unix_h() - last.hour.unix_h()) as f64)
+            })
+            .collect();
+        let first = costs(&self.live, &members, &predicted, now, &centres, GATE);
+        let mut assigned = assign(&first, centres.len());
+        let mut second = costs(&self.live, &members, &predicted, now, &centres, SECOND_GATE);
+        for (row, costs) in second.iter_mut().enumerate() {
+            for (column, cost) in costs.iter_mut().enumerate() {
+                if assigned[row].is_some() || assigned.contains(&Some(column)) {
+                    *cost = None;
+                }
+            }
+        }
+        for (row, column) in assign(&second, centres.len()).into_iter().enumerate() {
+            assigned[row] = assigned[row].or(column);
+        }
+        for ((member, state), column) in members.iter().zip(&predicted).zip(&assigned) {
+            self.live[*member].extend(now, state, column.map(|column| centres[column]));
+        }
+        // By centre: the number of the track that has it.
+        let taken: Vec<Option<usize>> = (0..centres.len())
+            .map(|column| assigned.iter().position(|found| *found == Some(column)))
+            .map(|row| row.map(|row| self.live[members[row]].id))
+            .collect();
+        for (row, member) in members.iter().enumerate() {
+            if assigned[row].is_none() {
+                let trusted = hour.trusted(predicted[row].position);
+                miss(&mut self.live[*member], now, trusted, &centres, &taken);
+            }
+        }
+        for (column, centre) in centres.iter().enumerate() {
+            if taken[column].is_none() && centre.confidence >= BIRTH_CONFIDENCE {
+                self.bear(now, centre);
+            }
+        }
+    }
+
+    /// A centre that belongs to no track begins one.
+    fn bear(&mut self, now: Hour, centre: &Centre) {
+        let mut track = Track::born(self.born, now, centre);
+        self.born += 1;
+        let parent = self
+            .live
+            .iter()
+            .filter(|other| {
+                other.kind == centre.kind && other.confirmed.is_some() && other.misses == 0
+            })
+            .map(|other| (other, other.newest().state.position.distance_km(centre.position)))
+            .filter(|(other, distance_km)| *distance_km < other.centre.radius_km)
+            .min_by(|(_, one), (_, other)| one.total_cmp(other));
+        if let Some((parent, _)) = parent {
+            track.happened.push((now, Happening::SplitFrom(parent.id)));
+        }
+        self.live.push(track);
+    }
+
+    /// Moves what has ended out of the way; what was never confirmed leaves no trace.
+    fn bury(&mut self) {
+        let (ended, kept): (Vec<Track>, Vec<Track>) =
+            std::mem::take(&mut self.live).into_iter().partition(|t| t.standing == Standing::Ended);
+        self.past.extend(ended.into_iter().filter(|track| track.confirmed.is_some()));
+        self.live = kept;
+    }
+}
+
+/// A track without a find this hour: it coasts, is withdrawn, or ends.
+fn miss(track: &mut Track, now: Hour, trusted: bool, centres: &[&Centre], taken: &[Option<usize>]) {
+    if track.confirmed.is_none() {
+        if track.misses > TENTATIVE_MISSES_MAX {
+            track.standing = Standing::Ended;
+        }
+        return;
+    }
+    let place = track.newest().state.position;
+    if track.rival.is_none() {
+        track.rival = centres
+            .iter()
+            .zip(taken)
+            .map(|(centre, by)| (centre.position.distance_km(place), *by))
+            .filter(|(distance_km, by)| *distance_km < MERGE_KM && by.is_some())
+            .min_by(|(one, _), (other, _)| one.total_cmp(other))
+            .and_then(|(_, by)| by);
+    }
+    let coasted_h = track.coasted_h();
+    let weak = track.centre.confidence < WEAK_CONFIDENCE;
+    let withdraw_h = if weak { WITHDRAW_WEAK_H } else { WITHDRAW_H };
+    if coasted_h > COAST_MAX_H && track.misses > COAST_MAX_MISSES {
+        if track.standing == Standing::Live {
+            track.happened.push((now, farewell(track)));
+        }
+        track.standing = Standing::Ended;
+        track.trim();
+    } else if track.standing == Standing::Live
+        && coasted_h >= withdraw_h
+        && (trusted || track.rival.is_some())
+    {
+        track.happened.push((now, farewell(track)));
+        track.standing = Standing::Withdrawn;
+    }
+}
+
+fn farewell(track: &Track) -> Happening {
+    track.rival.map_or(Happening::Lost, Happening::MergedInto)
+}
+
+/// Costs of giving each centre to each track, counted from the least.
+fn costs(
+    live: &[Track],
+    members: &[usize],
+    predicted: &[State],
+    now: Hour,
+    centres: &[&Centre],
+    gate: f64,
+) -> Vec<Vec<Option<f64>>> {
+    let raw: Vec<Vec<Option<f64>>> = members
         .iter()
-        .map(|k| {
-            let last = live[*k].newest();
-            last.state.predicted((hour.unix_h() - last.hour.unix_h()) as f64)
-        })
-        .collect();
-    let distances: Vec<Vec<Option<f64>>> = members
-        .iter()
-        .zip(&predicted)
+        .zip(predicted)
         .map(|(k, state)| {
-            centres.iter().map(|centre| distance(&live[*k], state, hour, centre)).collect()
+            centres
+                .iter()
+                .map(|centre| live[*k].place_in(state, now, centre, gate).map(|(cost, _)| cost))
+                .collect()
         })
         .collect();
-    let assigned = assign(&distances, centres.len());
-    for ((member, state), column) in members.iter().zip(&predicted).zip(&assigned) {
-        live[*member].extend(hour, state, column.map(|column| centres[column]));
-    }
-    let taken: Vec<Option<usize>> = (0..centres.len())
-        .map(|column| assigned.iter().position(|found| *found == Some(column)))
-        .collect();
-    for (row, member) in members.iter().enumerate() {
-        if assigned[row].is_some() {
-            continue;
-        }
-        let merged = (0..centres.len()).find(|column| {
-            taken[*column].is_some() && distances[row][*column].is_some_and(|d| d <= GATE)
-        });
-        let track = &live[*member];
-        let lost = if track.confirmed {
-            track.coasted_h() > COAST_MAX_H
-        } else {
-            track.misses > TENTATIVE_MISSES_MAX
-        };
-        if let (Some(column), true) = (merged, track.confirmed) {
-            let into = taken[column].map(|row| members[row]);
-            let what = format!("merged into {}", mark(into));
-            let track = &mut live[*member];
-            track.trim();
-            track.events.push(TrackEvent { hour, what });
-            track.ended = true;
-        } else if lost {
-            let track = &mut live[*member];
-            track.trim();
-            track.events.push(TrackEvent { hour, what: "lost".to_owned() });
-            track.ended = true;
-        }
-    }
-    for (column, centre) in centres.iter().enumerate() {
-        if taken[column].is_some() || centre.confidence < BIRTH_CONFIDENCE {
-            continue;
-        }
-        let mut events = vec![TrackEvent { hour, what: "found".to_owned() }];
-        let parent = live.iter().position(|track| {
-            track.kind == kind
-                && track.confirmed
-                && track.newest().state.position.distance_km(centre.position)
-                    < track.centre.radius_km
-        });
-        if parent.is_some() {
-            events.push(TrackEvent { hour, what: format!("split from {}", mark(parent)) });
-        }
-        live.push(Track::born(hour, centre, events));
-    }
+    let least = raw.iter().flatten().flatten().copied().fold(f64::INFINITY, f64::min);
+    raw.into_iter()
+        .map(|row| row.into_iter().map(|cost| cost.map(|cost| cost - least)).collect())
+        .collect()
 }
 
-/// Another track in an event.
-fn mark(track: Option<usize>) -> String {
-    track.map_or_else(|| "another".to_owned(), |_| "a near one".to_owned())
-}
-
-/// Squared normalised distance of a centre from a predicted state; `None` beyond the gate or the
-/// fastest believed motion.
-fn distance(track: &Track, predicted: &State, hour: Hour, centre: &Centre) -> Option<f64> {
-    let last = track.newest();
-    let moved_km = last.state.position.distance_km(centre.position);
-    let elapsed_h = (hour.unix_h() - last.hour.unix_h()) as f64;
-    let speed_limit_km = SPEED_MAX_KM_H * elapsed_h + SPEED_SLACK_KM;
-    if moved_km > speed_limit_km {
-        return None;
-    }
-    let (east_km, north_km) = predicted.position.offset_to(centre.position);
-    let position_variance = predicted.motion.value + position_error_km(centre).powi(2);
-    let pressure_variance = predicted.pressure.value + pressure_error_hpa(centre).powi(2);
-    let surprise_hpa = centre.pressure_hpa - predicted.pressure_hpa;
-    let squared = (east_km * east_km + north_km * north_km) / position_variance
-        + surprise_hpa * surprise_hpa / pressure_variance;
-    (squared <= GATE).then_some(squared)
-}
-
-/// Cheapest assignment of rows to columns; a row may go without at the price of the gate.
+/// Cheapest assignment of rows to columns; a row goes without only where it must: that costs more
+/// than any pair.
 ///
 /// Costs are whole thousandths, so that the outcome is exact and the same everywhere; equal ones
 /// are settled by the order of rows and columns.
@@ -265,7 +388,9 @@ pub fn assign(distances: &[Vec<Option<f64>>], columns: usize) -> Vec<Option<usiz
         return Vec::new();
     }
     let thousandths = |cost: f64| whole_nearest(cost * 1000.0);
-    let forbidden = thousandths(GATE) * 1000;
+    let dearest = distances.iter().flatten().flatten().copied().fold(GATE, f64::max);
+    let without = thousandths(dearest) + 1;
+    let forbidden = without.saturating_mul(1000);
     let rows = distances.len();
     let mut weights = Matrix::new(rows, columns + rows, forbidden);
     for (row, costs) in distances.iter().enumerate() {
@@ -274,7 +399,7 @@ pub fn assign(distances: &[Vec<Option<f64>>], columns: usize) -> Vec<Option<usiz
                 weights[(row, column)] = thousandths(*cost);
             }
         }
-        weights[(row, columns + row)] = thousandths(GATE);
+        weights[(row, columns + row)] = without;
     }
     let (_, found) = kuhn_munkres_min(&weights);
     found

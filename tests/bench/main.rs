@@ -9,6 +9,7 @@ mod decode;
 mod fuzz;
 mod obs;
 mod screen;
+mod systems;
 
 fn main() {
     let wanted: Vec<String> =
@@ -32,5 +33,8 @@ fn main() {
     // Long, and no measurement: only when asked by name.
     if wanted.iter().any(|word| word == "fuzz") {
         fuzz::run(&wanted);
+    }
+    if asked("systems") {
+        systems::run();
     }
 }

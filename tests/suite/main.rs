@@ -16,6 +16,8 @@ mod rehearse_samples;
 mod rehearse_truth;
 mod scenario;
 mod storm_1996;
+mod systems_fields;
+mod systems_tracks;
 mod tendency_real_day;
 mod terminal;
 mod winds_global;
