@@ -25,16 +25,9 @@ const ONE_SYSTEM_SADDLE_HPA: f64 = 2.0;
 const ERROR_RATIO_MAX: f64 = 0.7;
 /// Up to this ratio an analysis that shows no centre is taken to say that there is none.
 const TRUST_RATIO_MAX: f64 = 0.4;
-/// Error of the pressure over error of its slope, m: from rehearsed lows, so that 68 in 100 of them
-/// lie within the stated error of place (270 km with 1,000 reports an hour, 290 with 300).
-const ERROR_SCALE_M: f64 = 270_000.0;
-/// Analyses are too smooth: lows deeper than 4 hPa came out too shallow by about the stated error
-/// of the pressure with 300 as with 1,000 rehearsed reports an hour (0.2 to 0.6 hPa). So much of the error is
-/// taken off, and so much is added to the error for it.
-const SMOOTHING_SHARE: f64 = 0.8;
-const SMOOTHING_ERROR_SHARE: f64 = 0.6;
-/// Depth from which that was shown, hPa; it fades below.
-const SMOOTHING_DEPTH_HPA: f64 = 4.0;
+/// Error of the pressure over error of its slope, m: set on rehearsed lows of 300 and 1,000 reports
+/// an hour, so that about 68 in 100 of them lie within the stated error of place.
+const ERROR_SCALE_M: f64 = 250_000.0;
 /// Errors of rehearsed analyses over those stated, at centres and saddles.
 const ERROR_EXCESS: f64 = 1.3;
 /// Distance over which the errors of a centre and its saddle are alike, km.
@@ -53,7 +46,7 @@ pub struct Centre {
     pub position: Position,
     /// Standard error of each coordinate, km.
     pub position_error_km: f64,
-    /// Central pressure, hPa: of a low a little below the analysis, which is too smooth there.
+    /// Central pressure, hPa.
     pub pressure_hpa: f64,
     /// Its standard error, hPa.
     pub pressure_error_hpa: f64,
@@ -180,17 +173,12 @@ fn centre(analysis: &HourAnalysis, kind: Kind, basin: &Basin, sign: f64) -> Opti
         saddle_error_hpa.unwrap_or(error_hpa),
         position.distance_km(saddle),
     );
-    let smoothing_hpa = if kind == Kind::Low {
-        SMOOTHING_SHARE * error_hpa * (depth_hpa / SMOOTHING_DEPTH_HPA).clamp(0.0, 1.0)
-    } else {
-        0.0
-    };
     Some(Centre {
         kind,
         position,
         position_error_km: position_error_km(point.hessian_pa_m2, error_hpa, sign, spacing_km),
-        pressure_hpa: pressure_hpa - smoothing_hpa,
-        pressure_error_hpa: error_hpa.hypot(SMOOTHING_ERROR_SHARE * error_hpa),
+        pressure_hpa,
+        pressure_error_hpa: error_hpa,
         depth_hpa,
         last_closed_isobar_hpa: sign * basin.level,
         radius_km: (basin.points as f64 * spacing_km * spacing_km / std::f64::consts::PI).sqrt(),

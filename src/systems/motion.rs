@@ -17,8 +17,8 @@ const FIRST_RATE_HPA_H: f64 = 1.0;
 /// hours share most of their reports.
 const LASTING_SHARE: f64 = 0.9;
 /// Time in which that part is forgotten by a factor e, of places and of pressures, h. In rehearsed
-/// analyses of 300 and 1,000 reports an hour the errors of place were alike by 0.6 an hour apart,
-/// 0.4 two hours apart, those of pressure by 0.7 and 0.6.
+/// analyses of 300 and 1,000 reports an hour the errors of place were alike by 0.4 to 0.6 an hour
+/// apart and 0.1 to 0.4 two hours apart, those of pressure by 0.6 and 0.5.
 const LASTING_PLACE_H: f64 = 2.5;
 pub(super) const LASTING_PRESSURE_H: f64 = 4.0;
 
@@ -161,6 +161,20 @@ pub struct Sighting {
     pub pressure_hpa: f64,
     /// Its standard error, hPa.
     pub pressure_error_hpa: f64,
+    /// Doubt of this one sighting beyond those errors: of the place, km, and of the pressure, hPa.
+    pub doubt: (f64, f64),
+}
+
+impl Sighting {
+    fn place_noise(&self) -> Noise {
+        let noise = Noise::of_analysis(self.position_error_km);
+        Noise { fresh: noise.fresh + self.doubt.0.powi(2), ..noise }
+    }
+
+    fn pressure_noise(&self) -> Noise {
+        let noise = Noise::of_analysis(self.pressure_error_hpa);
+        Noise { fresh: noise.fresh + self.doubt.1.powi(2), ..noise }
+    }
 }
 
 /// State of a track at one hour: place, velocity, pressure, rate.
@@ -191,17 +205,11 @@ impl State {
             position: seen.position,
             velocity_km_h: [0.0, 0.0],
             off: [0.0, 0.0],
-            motion: Covariance::first(
-                Noise::of_analysis(seen.position_error_km),
-                FIRST_VELOCITY_KM_H,
-            ),
+            motion: Covariance::first(seen.place_noise(), FIRST_VELOCITY_KM_H),
             pressure_hpa: seen.pressure_hpa,
             rate_hpa_h: 0.0,
             pressure_off: 0.0,
-            pressure: Covariance::first(
-                Noise::of_analysis(seen.pressure_error_hpa),
-                FIRST_RATE_HPA_H,
-            ),
+            pressure: Covariance::first(seen.pressure_noise(), FIRST_RATE_HPA_H),
         }
     }
 
@@ -238,9 +246,8 @@ impl State {
     /// and the determinant of its covariance, km4 hPa2.
     pub fn distance(&self, seen: &Sighting) -> (f64, f64) {
         let [east_km, north_km] = self.off_km(seen);
-        let square_km = self.motion.surprise(Noise::of_analysis(seen.position_error_km));
-        let pressure = Noise::of_analysis(seen.pressure_error_hpa);
-        let square_hpa = self.pressure.surprise(pressure);
+        let square_km = self.motion.surprise(seen.place_noise());
+        let square_hpa = self.pressure.surprise(seen.pressure_noise());
         let off_hpa = self.off_hpa(seen);
         let squared =
             (east_km * east_km + north_km * north_km) / square_km + off_hpa * off_hpa / square_hpa;
@@ -249,22 +256,22 @@ impl State {
 
     /// Observed minus expected place, km.
     fn off_km(&self, seen: &Sighting) -> [f64; 2] {
-        let lasting = Noise::of_analysis(seen.position_error_km).lasting;
+        let lasting = seen.place_noise().lasting;
         let (east_km, north_km) = self.position.offset_to(seen.position);
         [east_km - lasting * self.off[0], north_km - lasting * self.off[1]]
     }
 
     /// Observed minus expected pressure, hPa.
     fn off_hpa(&self, seen: &Sighting) -> f64 {
-        let lasting = Noise::of_analysis(seen.pressure_error_hpa).lasting;
+        let lasting = seen.pressure_noise().lasting;
         seen.pressure_hpa - self.pressure_hpa - lasting * self.pressure_off
     }
 
     /// The state after a centre was observed.
     #[must_use]
     pub fn updated(&self, seen: &Sighting) -> Self {
-        let motion_noise = Noise::of_analysis(seen.position_error_km);
-        let pressure_noise = Noise::of_analysis(seen.pressure_error_hpa);
+        let motion_noise = seen.place_noise();
+        let pressure_noise = seen.pressure_noise();
         let [east_km, north_km] = self.off_km(seen);
         let [k_value, k_rate, k_off] = self.motion.gains(motion_noise);
         let [u, v] = self.velocity_km_h;
@@ -375,7 +382,8 @@ mod tests {
     use super::*;
 
     fn seen(position: Position, position_error_km: f64, pressure_hpa: f64) -> Sighting {
-        Sighting { position, position_error_km, pressure_hpa, pressure_error_hpa: 1.0 }
+        let doubt = (0.0, 0.0);
+        Sighting { position, position_error_km, pressure_hpa, pressure_error_hpa: 1.0, doubt }
     }
 
     #[track_caller]

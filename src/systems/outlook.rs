@@ -58,6 +58,7 @@ mod tests {
             position_error_km: 30.0,
             pressure_hpa,
             pressure_error_hpa: 1.0,
+            doubt: (0.0, 0.0),
         };
         let mut state = State::first(&seen(Position::clamped(50.0, 170.0), 985.0));
         for hour in 1..=12 {

@@ -17,6 +17,11 @@ pub const GATE: f64 = 11.344_87;
 /// Gate of the second round, among tracks and centres that the first left over: one in a hundred
 /// finds lies beyond the first gate by chance, and would cut most tracks within four days.
 const SECOND_GATE: f64 = 25.0;
+/// The third round, among confirmed tracks and centres that are left over still: where the old
+/// centre is gone and a new one stands this near, with a pressure this like, the system has not
+/// ended; its centre has jumped, as in a broad flat low.
+const JUMP_KM: f64 = 250.0;
+const JUMP_HPA: f64 = 5.0;
 /// Fastest believed motion of a centre, km/h (60 kt, TRK-4).
 const SPEED_MAX_KM_H: f64 = 111.0;
 /// Slack on that limit, km: two places are each uncertain.
@@ -153,11 +158,11 @@ impl Track {
             self.standing = Standing::Live;
             self.happened.push((hour, Happening::FoundAgain));
         }
-        let place = [GATE, SECOND_GATE]
+        let seen = Round::ALL
             .iter()
-            .find_map(|gate| self.place_in(predicted, hour, centre, *gate))
-            .map_or(centre.position, |found| found.1);
-        let state = predicted.updated(&sighting(centre, place));
+            .find_map(|round| self.take(predicted, hour, centre, *round))
+            .map_or_else(|| sighting(centre, centre.position), |(_, seen)| seen);
+        let state = predicted.updated(&seen);
         self.steps.push(Step { hour, state, observed: true });
         self.centre = centre.clone();
         self.hits += 1;
@@ -176,19 +181,19 @@ impl Track {
         }
     }
 
-    /// Cost of taking a centre for this track, and the place it is taken at: the centre's own, or
-    /// that of a secondary where only that lies within the gate. `None` beyond the gate or the
-    /// fastest believed motion.
+    /// Cost of taking a centre for this track in a round of the association, and the sighting that
+    /// it then is: at the centre's own place, or at that of a secondary where only that lies within
+    /// the gate. `None` beyond the gate or the fastest believed motion.
     ///
     /// The cost is the squared normalised distance and the logarithm of the covariance's
     /// determinant, so that a track that knows less claims less (TRK-4).
-    fn place_in(
+    fn take(
         &self,
         predicted: &State,
         hour: Hour,
         centre: &Centre,
-        gate: f64,
-    ) -> Option<(f64, Position)> {
+        round: Round,
+    ) -> Option<(f64, Sighting)> {
         let last = self.newest();
         let elapsed_h = (hour.unix_h() - last.hour.unix_h()) as f64;
         let reach_km = SPEED_MAX_KM_H * elapsed_h + SPEED_SLACK_KM;
@@ -196,10 +201,36 @@ impl Track {
             .chain(centre.secondaries.iter().map(|secondary| secondary.position))
             .filter(|place| last.state.position.distance_km(*place) <= reach_km)
             .find_map(|place| {
-                let (squared, determinant) = predicted.distance(&sighting(centre, place));
-                (squared <= gate).then(|| (squared + determinant.ln(), place))
+                let mut seen = sighting(centre, place);
+                let (squared, determinant) = predicted.distance(&seen);
+                let off_km = predicted.position.distance_km(place);
+                let off_hpa = (predicted.pressure_hpa - centre.pressure_hpa).abs();
+                let within = match round {
+                    Round::First => squared <= GATE,
+                    Round::Second => squared <= SECOND_GATE,
+                    Round::Jump => {
+                        self.confirmed.is_some() && off_km <= JUMP_KM && off_hpa <= JUMP_HPA
+                    }
+                };
+                if round == Round::Jump {
+                    // A jump says little of the motion: it is doubted, and turns the track less.
+                    seen.doubt = (off_km / 3.0, off_hpa / 3.0);
+                }
+                within.then(|| (squared + determinant.ln(), seen))
             })
     }
+}
+
+/// The rounds of the association: each takes what the one before left over.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+enum Round {
+    First,
+    Second,
+    Jump,
+}
+
+impl Round {
+    const ALL: [Self; 3] = [Self::First, Self::Second, Self::Jump];
 }
 
 /// A centre as the filter takes it, at one of its places.
@@ -209,6 +240,7 @@ fn sighting(centre: &Centre, position: Position) -> Sighting {
         position_error_km: centre.position_error_km.max(POSITION_ERROR_MIN_KM),
         pressure_hpa: centre.pressure_hpa,
         pressure_error_hpa: centre.pressure_error_hpa.max(PRESSURE_ERROR_MIN_HPA),
+        doubt: (0.0, 0.0),
     }
 }
 
@@ -251,18 +283,19 @@ impl Run {
                 last.state.predicted((now.unix_h() - last.hour.unix_h()) as f64)
             })
             .collect();
-        let first = costs(&self.live, &members, &predicted, now, &centres, GATE);
-        let mut assigned = assign(&first, centres.len());
-        let mut second = costs(&self.live, &members, &predicted, now, &centres, SECOND_GATE);
-        for (row, costs) in second.iter_mut().enumerate() {
-            for (column, cost) in costs.iter_mut().enumerate() {
-                if assigned[row].is_some() || assigned.contains(&Some(column)) {
-                    *cost = None;
+        let mut assigned: Vec<Option<usize>> = vec![None; members.len()];
+        for round in Round::ALL {
+            let mut costs = costs(&self.live, &members, &predicted, now, &centres, round);
+            for (row, costs) in costs.iter_mut().enumerate() {
+                for (column, cost) in costs.iter_mut().enumerate() {
+                    if assigned[row].is_some() || assigned.contains(&Some(column)) {
+                        *cost = None;
+                    }
                 }
             }
-        }
-        for (row, column) in assign(&second, centres.len()).into_iter().enumerate() {
-            assigned[row] = assigned[row].or(column);
+            for (row, column) in assign(&costs, centres.len()).into_iter().enumerate() {
+                assigned[row] = assigned[row].or(column);
+            }
         }
         for ((member, state), column) in members.iter().zip(&predicted).zip(&assigned) {
             self.live[*member].extend(now, state, column.map(|column| centres[column]));
@@ -360,7 +393,7 @@ fn costs(
     predicted: &[State],
     now: Hour,
     centres: &[&Centre],
-    gate: f64,
+    round: Round,
 ) -> Vec<Vec<Option<f64>>> {
     let raw: Vec<Vec<Option<f64>>> = members
         .iter()
@@ -368,7 +401,7 @@ fn costs(
         .map(|(k, state)| {
             centres
                 .iter()
-                .map(|centre| live[*k].place_in(state, now, centre, gate).map(|(cost, _)| cost))
+                .map(|centre| live[*k].take(state, now, centre, round).map(|(cost, _)| cost))
                 .collect()
         })
         .collect();

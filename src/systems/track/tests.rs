@@ -107,3 +107,54 @@ fn a_single_find_is_no_system_and_doubt_confirms_nothing() {
         .collect();
     assert!(run(&doubtful).iter().all(|track| track.confirmed.is_none()));
 }
+
+/// A find beyond the gate of 99 % does not cut the track, and a centre that jumps within its low
+/// keeps the name; one that appears while the old one is still there is another.
+#[test]
+fn a_jump_is_no_end_and_a_second_centre_no_jump() {
+    let place = Position::clamped(-52.0, 178.0);
+    let low = |h: i64, off_km: f64| {
+        let along = place.destination(90.0, 40.0 * h as f64);
+        centre(Kind::Low, along.destination(0.0, off_km), 975.0)
+    };
+    for off_km in [120.0, 230.0] {
+        let jumped: Vec<(Hour, Vec<Centre>)> = (0..20)
+            .map(|h| (Hour::from_unix_h(h), vec![low(h, if h < 10 { 0.0 } else { off_km })]))
+            .collect();
+        let tracks = run(&jumped);
+        assert_eq!(tracks.len(), 1, "{off_km}");
+        assert_eq!(tracks[0].hits(), 20);
+    }
+    let second: Vec<(Hour, Vec<Centre>)> = (0..20)
+        .map(|h| {
+            let both = if h < 10 { vec![low(h, 0.0)] } else { vec![low(h, 0.0), low(h, 400.0)] };
+            (Hour::from_unix_h(h), both)
+        })
+        .collect();
+    let tracks = run(&second);
+    assert_eq!(tracks.len(), 2);
+    let parent = tracks[0].id;
+    assert!(tracks[1].happened.iter().any(|(_, what)| *what == Happening::SplitFrom(parent)));
+}
+
+/// Two lows become one: the one that is no longer found ends as merged, and the other goes on.
+#[test]
+fn a_low_that_is_taken_in_ends_as_merged() {
+    let place = Position::clamped(55.0, -20.0);
+    let hours: Vec<(Hour, Vec<Centre>)> = (0..24)
+        .map(|h| {
+            let apart_km = 700.0 - 45.0 * h as f64;
+            let deep = centre(Kind::Low, place, 970.0);
+            let weak = centre(Kind::Low, place.destination(90.0, apart_km), 990.0);
+            let both = if apart_km > 200.0 { vec![deep, weak] } else { vec![deep] };
+            (Hour::from_unix_h(h), both)
+        })
+        .collect();
+    let tracks = run(&hours);
+    assert_eq!(tracks.len(), 2);
+    assert_eq!(tracks[0].standing, Standing::Live);
+    assert_eq!(tracks[0].hits(), 24);
+    assert_eq!(tracks[1].standing, Standing::Ended);
+    let last = tracks[1].happened.last().map(|(_, what)| *what);
+    assert_eq!(last, Some(Happening::MergedInto(tracks[0].id)));
+}
