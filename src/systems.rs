@@ -51,6 +51,16 @@ pub struct Measured {
     pub error: f64,
 }
 
+impl Measured {
+    /// The error as it is shown with so many decimals: rounded up, so that a small one is never
+    /// shown as none.
+    pub fn error_shown(&self, decimals: usize) -> f64 {
+        let scale = 10_f64.powi(i32::try_from(decimals).unwrap_or(0));
+        // A hair's breadth keeps 0.7 from becoming 0.8 by the last bit.
+        (self.error * scale - 1e-9).ceil().max(1.0) / scale
+    }
+}
+
 /// One point of a track.
 #[derive(Clone, Copy, PartialEq, Debug, Serialize, Deserialize)]
 pub struct TrackPoint {

@@ -193,7 +193,9 @@ fn explosive(evidence: &Evidence<'_>, system: &System, out: &mut Vec<Alert>) {
         found.position = Some(system.position);
         found.message = format!(
             "{} deepens explosively: {:.1} +- {:.1} bergeron over 24 h",
-            system.name, rate.value, rate.error
+            system.name,
+            rate.value,
+            rate.error_shown(1)
         );
         found.evidence = change_words(system);
         found.confidence = Some(above(rate.value, rate.error, on));
@@ -206,7 +208,9 @@ fn explosive(evidence: &Evidence<'_>, system: &System, out: &mut Vec<Alert>) {
         found.position = Some(system.position);
         found.message = format!(
             "{} deepens at {:.1} +- {:.1} bergeron over 12 h: explosive if it goes on",
-            system.name, rate.value, rate.error
+            system.name,
+            rate.value,
+            rate.error_shown(1)
         );
         found.evidence = change_words(system);
         found.confidence = Some(above(rate.value, rate.error, on));
@@ -223,13 +227,13 @@ fn change_words(system: &System) -> String {
     let part = |hours: u8, change: Option<crate::systems::Measured>| {
         change.map_or_else(
             || format!("{hours} h -"),
-            |change| format!("{hours} h {:+.1} +- {:.1}", change.value, change.error),
+            |change| format!("{hours} h {:+.1} +- {:.1}", change.value, change.error_shown(1)),
         )
     };
     format!(
         "central pressure {:.1} +- {:.1} hPa; change {}, {}, {} hPa",
         system.pressure_hpa.value,
-        system.pressure_hpa.error,
+        system.pressure_hpa.error_shown(1),
         part(6, system.change_6h_hpa),
         part(12, system.change_12h_hpa),
         part(24, system.change_24h_hpa)

@@ -153,7 +153,7 @@ fn describe(system: &System, out: &mut String) {
             place_words(system.position),
             nm_from_km(system.position_error_km),
             system.pressure_hpa.value,
-            system.pressure_hpa.error,
+            system.pressure_hpa.error_shown(1),
             phase_word(system.phase, system.kind)
         ),
         5,
@@ -167,7 +167,8 @@ fn describe(system: &System, out: &mut String) {
         measured(system.change_24h_hpa, 1)
     );
     if let Some(rate) = system.bergeron {
-        let _ = write!(rest, "; {:.1} +- {:.1} bergeron", clean(rate.value, 1), rate.error);
+        let _ =
+            write!(rest, "; {:.1} +- {:.1} bergeron", clean(rate.value, 1), rate.error_shown(1));
     }
     if let Some(radius_km) = system.gale_radius_km {
         let _ = write!(rest, "; gale force out to {:.0} nm", nm_from_km(radius_km));
@@ -180,7 +181,7 @@ fn describe(system: &System, out: &mut String) {
             place_words(ahead.position),
             nm_from_km(ahead.major_km),
             ahead.pressure_hpa.value,
-            ahead.pressure_hpa.error
+            ahead.pressure_hpa.error_shown(0)
         );
         paragraph(&text, 5, out);
     }

@@ -39,7 +39,11 @@ pub fn measured(value: Option<Measured>, decimals: usize) -> String {
     value.map_or_else(
         || "-".to_owned(),
         |value| {
-            format!("{:+.decimals$} +- {:.decimals$}", clean(value.value, decimals), value.error)
+            format!(
+                "{:+.decimals$} +- {:.decimals$}",
+                clean(value.value, decimals),
+                value.error_shown(decimals)
+            )
         },
     )
 }

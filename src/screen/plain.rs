@@ -130,10 +130,10 @@ mod tests {
         let picture = sample::picture();
         let told = changes(None, &picture);
         assert_eq!(told.len(), picture.alerts.len() + 1 + picture.systems.len());
-        assert!(told[0].starts_with("Alert, URGENT: L4 deepens explosively"), "{}", told[0]);
+        assert!(told[0].starts_with("Alert, URGENT: L14k deepens explosively"), "{}", told[0]);
         assert!(
             told.iter().any(|line| line
-                == "New Low L4: 964.4 hPa +-0.9, 56.0N 018.0W, -3.4 hPa in 3 h, 1.2 bergeron, \
+                == "New Low L14k: 964.4 hPa +-0.9, 56.0N 018.0W, -3.4 hPa in 3 h, 1.2 bergeron, \
                     moving 056 at 23 kt, deepening."),
             "{told:#?}"
         );
@@ -150,9 +150,9 @@ mod tests {
         after.systems.pop();
         let told = changes(Some(&before), &after);
         assert_eq!(told.len(), 4, "{told:#?}");
-        assert!(told[0].starts_with("Acknowledged: L4 deepens"));
-        assert!(told[1].starts_with("Alert over: new low L6"));
-        assert!(told[2].starts_with("Low L4: 963.8 hPa"));
-        assert_eq!(told[3], "High H2 is no longer followed.");
+        assert!(told[0].starts_with("Acknowledged: L14k deepens"));
+        assert!(told[1].starts_with("Alert over: new low L15n"));
+        assert!(told[2].starts_with("Low L14k: 963.8 hPa"));
+        assert_eq!(told[3], "High H13p is no longer followed.");
     }
 }

@@ -251,9 +251,9 @@ fn systems(place: Where) -> Vec<System> {
         events: vec![TrackEvent { hour: valid().plus(-24), what: "found".to_owned() }],
         reports_inside: 38,
     };
-    let mut deep = base("L4", Kind::Low, 0);
+    let mut deep = base("L14k", Kind::Low, 0);
     deep.outlook = outlook(course, 43.0, -1.0);
-    let mut weak = base("L6", Kind::Low, 1);
+    let mut weak = base("L15n", Kind::Low, 1);
     weak.pressure_hpa.error = 1.6;
     weak.change_3h_hpa = Some(measured(-0.4, 1.4));
     weak.change_6h_hpa = None;
@@ -271,7 +271,7 @@ fn systems(place: Where) -> Vec<System> {
     weak.since = valid().plus(-3);
     weak.track = track(1, 3);
     weak.reports_inside = 6;
-    let mut high = base("H2", Kind::High, 2);
+    let mut high = base("H13p", Kind::High, 2);
     high.change_3h_hpa = Some(measured(0.3, 0.5));
     high.change_6h_hpa = Some(measured(0.8, 0.6));
     high.change_12h_hpa = Some(measured(1.1, 0.8));
@@ -381,8 +381,8 @@ fn convergence(place: Where) -> Vec<ConvergenceArea> {
         place: words.to_owned(),
     };
     vec![
-        area(Method::Friction, 56.0, -17.5, -8.1e-5, Some(1.1e-5), Some(-1.4e-5), "at L4"),
-        area(Method::Observed, 53.0, -12.0, -5.2e-5, Some(1.9e-5), None, "130 300 nm of L4"),
+        area(Method::Friction, 56.0, -17.5, -8.1e-5, Some(1.1e-5), Some(-1.4e-5), "at L14k"),
+        area(Method::Observed, 53.0, -12.0, -5.2e-5, Some(1.9e-5), None, "130 300 nm of L14k"),
         area(
             Method::Isallobaric,
             57.5,
@@ -390,9 +390,9 @@ fn convergence(place: Where) -> Vec<ConvergenceArea> {
             -3.3e-5,
             Some(2.4e-5),
             Some(0.3e-5),
-            "070 190 nm of L4",
+            "070 190 nm of L14k",
         ),
-        area(Method::Friction, 43.0, 8.6, -1.9e-5, None, Some(-0.2e-5), "at L6"),
+        area(Method::Friction, 43.0, 8.6, -1.9e-5, None, Some(-0.2e-5), "at L15n"),
     ]
 }
 
@@ -428,14 +428,7 @@ fn tendencies(place: Where) -> Vec<TendencyRow> {
                 change_3h_error_hpa: Some(if k == 5 { 2.1 } else { 0.4 }),
                 change_1h_hpa: Some(change / 2.6),
                 change_24h_hpa: (k % 3 != 2).then_some(change * 6.0),
-                words: if change < -3.6 {
-                    "falling very rapidly"
-                } else if change < -1.5 {
-                    "falling"
-                } else {
-                    "falling slowly, now steady"
-                }
-                .to_owned(),
+                words: crate::tendency::words::of_change(change, Some(7)),
                 trace_hpa,
                 doubtful: k == 7,
             }
@@ -462,8 +455,8 @@ fn alerts(place: Where) -> Vec<Alert> {
     let mut gale = alert(
         Rule::Gale,
         Urgency::Warning,
-        "L4",
-        "gale force within 540 km of L4: expected surface wind up to 52 kt",
+        "L14k",
+        "gale force within 290 nm of L14k: expected surface wind up to 52 kt",
         "expected surface wind from the analysis, 9 reports of 34 kt or more agree",
     );
     gale.acknowledged = true;
@@ -471,8 +464,8 @@ fn alerts(place: Where) -> Vec<Alert> {
         alert(
             Rule::ExplosiveDeepening,
             Urgency::Urgent,
-            "L4",
-            "L4 deepens explosively: 27.6 hPa in 24 h, 1.2 bergeron",
+            "L14k",
+            "L14k deepens explosively: 27.6 hPa in 24 h, 1.2 bergeron",
             "central pressure 962 +-0.9 hPa, 38 reports inside, followed for 24 h",
         ),
         alert(
@@ -488,8 +481,8 @@ fn alerts(place: Where) -> Vec<Alert> {
             ..alert(
                 Rule::NewSystem,
                 Urgency::Notice,
-                "L6",
-                "new low L6, 1000 hPa",
+                "L15n",
+                "new low L15n, 1000 hPa",
                 "closed isobar found in 3 hours running, 6 reports inside",
             )
         },

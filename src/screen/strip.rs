@@ -43,8 +43,9 @@ fn deepest(picture: &Picture) -> Option<&crate::systems::System> {
     picture.systems.iter().find(|system| system.kind == Kind::Low)
 }
 
-/// What the strip says, in two lots: when and what from, then what of it. `short` for a narrow one.
-fn items(scene: Scene<'_>, short: bool) -> [Vec<Item>; 2] {
+/// What the strip says, in two lots: when and what from, then what of it; the narrower, the less.
+fn items(scene: Scene<'_>, width: u16) -> [Vec<Item>; 2] {
+    let (short, roomy) = (width < 72, width >= 100);
     let Scene { picture, desk, look, .. } = scene;
     let summary = |text: String| Item::new(text, Role::Summary);
     let now = desk.now.unwrap_or(picture.now).max(picture.now);
@@ -81,7 +82,7 @@ fn items(scene: Scene<'_>, short: bool) -> [Vec<Item>; 2] {
         }
     }
     // What matters most must not be what is cut: alerts first.
-    let mut second = vec![alerts(picture, short)];
+    let mut second = vec![alerts(picture, width)];
     if let Some(low) = deepest(picture) {
         let pressure = number::fixed(low.pressure_hpa.value, usize::from(!short));
         let weak = if is_weak(low) { "?" } else { "" };
@@ -89,15 +90,18 @@ fn items(scene: Scene<'_>, short: bool) -> [Vec<Item>; 2] {
             second.push(Item::new(format!("{} {pressure}{weak}", low.name), Role::Low));
         } else {
             let error = number::fixed(low.pressure_hpa.error, 1);
-            let mut line = format!("deepest {} {pressure}{weak} +-{error} hPa", low.name);
+            let word = if roomy { "deepest" } else { "low" };
+            let mut line = format!("{word} {} {pressure}{weak} +-{error} hPa", low.name);
             if let Some(change) = low.change_3h_hpa {
                 let _ = write!(line, ", {}/3 h", number::signed(change.value, 1));
             }
             if let Some(change) = low.change_24h_hpa {
                 let _ = write!(line, ", {}/24 h", number::signed(change.value, 1));
             }
-            if let Some(rate) = low.bergeron.or(low.bergeron_12h) {
+            if let Some(rate) = low.bergeron {
                 let _ = write!(line, ", {} bergeron", number::fixed(rate.value, 1));
+            } else if let Some(rate) = low.bergeron_12h {
+                let _ = write!(line, ", {} bergeron by 12 h", number::fixed(rate.value, 1));
             }
             second.push(Item::new(line, Role::Low));
         }
@@ -108,7 +112,7 @@ fn items(scene: Scene<'_>, short: bool) -> [Vec<Item>; 2] {
 }
 
 /// How many alerts nobody has acknowledged.
-fn alerts(picture: &Picture, short: bool) -> Item {
+fn alerts(picture: &Picture, width: u16) -> Item {
     let open = open_alerts(picture);
     let urgent = picture
         .alerts
@@ -119,12 +123,13 @@ fn alerts(picture: &Picture, short: bool) -> Item {
         (_, true) => Role::Urgent,
         (_, false) => Role::Warning,
     };
-    match (short, open) {
-        (true, 0) => Item::new("alerts 0", role),
-        (true, _) => Item::new(format!(" !{open} "), role),
-        (false, 0) => Item::new("no open alert", role),
-        (false, 1) => Item::new(" ! 1 alert open ", role),
-        (false, _) => Item::new(format!(" ! {open} alerts open "), role),
+    match (width, open) {
+        (..72, 0) => Item::new("alerts 0", role),
+        (..72, _) => Item::new(format!(" !{open} "), role),
+        (_, 0) => Item::new("no open alert", role),
+        (72..100, _) => Item::new(format!(" ! alerts {open} "), role),
+        (_, 1) => Item::new(" ! 1 alert open ", role),
+        (..) => Item::new(format!(" ! {open} alerts open "), role),
     }
 }
 
@@ -137,8 +142,7 @@ pub(super) fn is_weak(system: &crate::systems::System) -> bool {
 pub(super) fn summary(buf: &mut Buffer, area: Rect, scene: Scene<'_>) {
     let look = scene.look;
     text::fill(buf, area, look.style(Role::Summary));
-    let short = area.width < 72;
-    let [first, second] = items(scene, short);
+    let [first, second] = items(scene, area.width);
     if area.height >= 2 {
         line(buf, Rect { height: 1, ..area }, &first, look);
         line(buf, Rect { y: area.y + 1, height: 1, ..area }, &second, look);

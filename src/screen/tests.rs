@@ -231,7 +231,7 @@ fn keys_lead_from_a_row_to_its_place_on_the_chart() {
     let desk = typed(&picture, 80, 24, "Sj<enter>");
     let text = drawn(&picture, &desk, Glyphs::Ascii).join("\n");
     assert!(text.contains(">Chart"), "{text}");
-    assert!(text.contains("L6? bears"), "{text}");
+    assert!(text.contains("L15n? bears"), "{text}");
     let filtered = drawn(&picture, &typed(&picture, 80, 24, "T/ship<enter>"), Glyphs::Ascii);
     let text = filtered.join("\n");
     assert!(text.contains("only with \"ship\"") && text.contains("SKELF"), "{text}");

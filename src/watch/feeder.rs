@@ -42,6 +42,7 @@ pub fn run(folder: &Path, poll: bool, limit: &dyn Fn() -> Instant, out: &Sender<
     let mut watcher = if poll { None } else { arm(folder, &wake) };
     let mut list = Watchlist::new();
     let mut finished: BTreeSet<String> = BTreeSet::new();
+    let mut told = false;
     loop {
         let seen = look(folder);
         if let Ok(seen) = &seen {
@@ -73,13 +74,18 @@ pub fn run(folder: &Path, poll: bool, limit: &dyn Fn() -> Instant, out: &Sender<
                     list.unread(name);
                 }
             }
-            if !read.is_empty() && out.send(Task::Files(read)).is_err() {
+            // The first look is told even where it found nothing: now that is known.
+            if (!read.is_empty() || !told) && out.send(Task::Files(read)).is_err() {
                 return;
             }
         } else {
+            if !told && out.send(Task::Files(Vec::new())).is_err() {
+                return;
+            }
             // The folder is gone: its watch is too. It is armed again when the folder returns.
             watcher = None;
         }
+        told = true;
         let patience = if watcher.is_none() || list.waits() { POLL } else { RESCAN };
         if !wait(&woken, patience, &mut finished) {
             return;

@@ -58,7 +58,12 @@ impl Worker {
     /// Works until it is told to end or nobody listens any more.
     pub fn run(mut self, tasks: &Receiver<Task>, out: &Sender<Message>) {
         let mut workshop = Workshop::new();
-        self.make(&mut workshop, out);
+        // With nothing held yet the first look into the folder comes first: an empty picture would
+        // say that there is no feed before anybody has looked.
+        if self.held.counts().held > 0 {
+            self.make(&mut workshop, out);
+        }
+        let mut looked = false;
         while let Ok(first) = tasks.recv() {
             let mut changed = false;
             let mut files = Vec::new();
@@ -66,8 +71,11 @@ impl Worker {
             for task in std::iter::once(first).chain(tasks.try_iter()) {
                 match task {
                     Task::End => return,
-                    Task::Files(read) => files.extend(read),
-                    Task::Time => changed = true,
+                    Task::Files(read) => {
+                        changed |= !std::mem::replace(&mut looked, true);
+                        files.extend(read);
+                    }
+                    Task::Time => changed |= looked,
                     decision => changed |= self.decide(decision, out),
                 }
             }

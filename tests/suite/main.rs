@@ -21,5 +21,6 @@ mod systems_tracks;
 mod tendency_real_day;
 mod terminal;
 mod winds_global;
+mod winds_truth;
 mod wire_reference;
 mod wire_samples;

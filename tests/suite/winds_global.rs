@@ -171,8 +171,8 @@ fn zone(
 /// and 0.965, turned by 23 to 24 degrees to the left and 16 to 17 to the right.
 ///
 /// Open question: the gradient wind of the same pressures agrees a little less with this wind than
-/// the geostrophic (0.881 against 0.904, and 0.953 against 0.964; over the sea alone 0.938 against
-/// 0.956, and 0.957 against 0.968). It should agree better. Not known yet: how much of it is the
+/// the geostrophic (0.891 against 0.904, and 0.960 against 0.964; over the sea alone 0.949 against
+/// 0.956, and 0.965 against 0.968). It should agree better. Not known yet: how much of it is the
 /// curvature that pressures 2.5 by 5 degrees apart, so interpolated, cannot give.
 #[test]
 fn the_geostrophic_wind_agrees_with_a_global_wind_in_both_hemispheres() {

@@ -85,7 +85,7 @@ fn winds(values: &PointValues, weak: bool, out: &mut Vec<String>) {
 pub(super) fn legend(scene: Scene<'_>, view: &View) -> String {
     let cell_km = view.cell_width_m() / 1000.0;
     let nm = [10.0, 20.0, 50.0, 100.0, 200.0, 500.0, 1000.0, 2000.0];
-    let most = f64::from(view.columns) / 4.0;
+    let most = f64::from(view.columns) / 6.0;
     let bar = nm
         .into_iter()
         .rev()
@@ -100,7 +100,7 @@ pub(super) fn legend(scene: Scene<'_>, view: &View) -> String {
     if layers.outlook {
         out.push("dashed +h: extrapolation".to_owned());
     }
-    out.push("broken isobar: weak".to_owned());
+    out.push("broken: weak".to_owned());
     if layers.tracks {
         out.push("o: every 6 h".to_owned());
     }

@@ -56,9 +56,8 @@ pub(super) fn detail(alert: &Alert) -> String {
     let sure = alert
         .confidence
         .map_or_else(String::new, |c| format!(" {}% sure.", number::fixed(c * 100.0, 0)));
-    let place = alert.position.map_or_else(String::new, |at| format!(" at {}", number::place(at)));
     format!(
-        "{}: {}{place}. Since {}. Why: {}.{sure}{}",
+        "{}: {}. Since {}. Why: {}.{sure}{}",
         urgency_word(alert.urgency),
         alert.message,
         alert.since.day_time(),

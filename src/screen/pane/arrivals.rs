@@ -56,7 +56,11 @@ pub(super) fn detail(line: &ArrivalLine) -> String {
         line.form,
         line.file,
         line.received.day_time(),
-        verdict_word(line.verdict),
+        match line.verdict {
+            Verdict::Sound => "sound",
+            Verdict::Doubtful => "doubtful",
+            Verdict::Refused => "refused",
+        },
         if line.text.is_empty() { "Nothing against it." } else { line.text.as_str() },
     )
 }

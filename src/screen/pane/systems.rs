@@ -3,6 +3,7 @@
 use std::fmt::Write as _;
 
 use super::Sheet;
+use crate::quantity::nm_from_km;
 use crate::screen::number::{self, Item};
 use crate::screen::table::{number as numbers, words};
 use crate::screen::theme::Role;
@@ -23,7 +24,7 @@ pub(super) const SHEET: Sheet = Sheet {
         numbers("kt", 5, 2),
         numbers("lat", 5, 4),
         numbers("lon", 6, 4),
-        numbers("+-km", 5, 9),
+        numbers("+-nm", 5, 9),
         words("phase", 9, 6),
         numbers("sure", 5, 9),
         numbers("radius", 6, 10),
@@ -78,10 +79,10 @@ pub(super) fn row(scene: Scene<'_>, system: &System) -> Vec<Item> {
         system.speed_kt.map_or_else(Item::missing, weak_speed),
         Item::text(number::latitude(system.position)),
         Item::text(number::longitude(system.position)),
-        Item::text(number::fixed(system.position_error_km, 0)),
+        Item::text(number::fixed(nm_from_km(system.position_error_km), 0)),
         Item::text(phase_word(system.kind, system.phase)),
         Item::text(format!("{}%", number::fixed(system.confidence * 100.0, 0))),
-        number::optional(system.radius_km, 0),
+        number::optional(system.radius_km.map(nm_from_km), 0),
         Item::new(pressure_trace(scene, system, 12, 1).concat(), role),
     ]
 }
@@ -109,11 +110,11 @@ fn pressure_trace(scene: Scene<'_>, system: &System, width: usize, height: usize
 pub(super) fn detail(system: &System, width: usize) -> Vec<String> {
     let kind = if system.kind == Kind::Low { "low" } else { "high" };
     let mut first = format!(
-        "{} {kind}, {}, {} +-{} km, found {}, {} reports inside, {}% sure.",
+        "{} {kind}, {}, {} +-{} nm, found {}, {} reports inside, {}% sure.",
         system.name,
         phase_word(system.kind, system.phase),
         number::place(system.position),
-        number::fixed(system.position_error_km, 0),
+        number::fixed(nm_from_km(system.position_error_km), 0),
         system.since.instant().day_time(),
         system.reports_inside,
         number::fixed(system.confidence * 100.0, 0),
@@ -123,7 +124,7 @@ pub(super) fn detail(system: &System, width: usize) -> Vec<String> {
         let _ = write!(first, " to the last closed isobar {}", number::fixed(isobar, 0));
     }
     if let Some(radius) = system.gale_radius_km {
-        let _ = write!(first, ", gale out to {} km", number::fixed(radius, 0));
+        let _ = write!(first, ", gale out to {} nm", number::fixed(nm_from_km(radius), 0));
     }
     first.push('.');
     let mut out = text::lines(&first, width);
@@ -155,13 +156,13 @@ pub(super) fn detail(system: &System, width: usize) -> Vec<String> {
             .iter()
             .map(|point| {
                 format!(
-                    "+{} h {} {} hPa +-{}, within {} x {} km",
+                    "+{} h {} {} hPa +-{}, within {} x {} nm",
                     point.lead_h,
                     number::place(point.position),
                     number::fixed(point.pressure_hpa.value, 0),
                     number::fixed(point.pressure_hpa.error, 0),
-                    number::fixed(point.major_km, 0),
-                    number::fixed(point.minor_km, 0),
+                    number::fixed(nm_from_km(point.major_km), 0),
+                    number::fixed(nm_from_km(point.minor_km), 0),
                 )
             })
             .collect();

@@ -15,7 +15,7 @@ pub(super) const SHEET: Sheet = Sheet {
         numbers("time", 6, 6),
         numbers("hPa", 7, 0),
         numbers("a", 2, 3),
-        numbers("3 h", 6, 0),
+        numbers("3 h", 7, 0),
         numbers("+-", 4, 7),
         numbers("sent", 6, 8),
         numbers("1 h", 5, 5),
