@@ -11,6 +11,8 @@
 use std::collections::{BTreeMap, BTreeSet};
 use std::sync::Arc;
 
+use serde::{Deserialize, Serialize};
+
 use crate::field::Grid;
 use crate::field::spline::Spline;
 use crate::instant::{Hour, Instant};
@@ -29,6 +31,7 @@ mod point;
 mod pressure;
 pub mod region;
 mod select;
+pub mod settled;
 mod site;
 mod solve;
 mod statistics;
@@ -53,7 +56,7 @@ pub struct PointAnalysis {
 }
 
 /// What the neighbour check said of one observation of the hour, and the innovations behind it.
-#[derive(Clone, PartialEq, Debug)]
+#[derive(Clone, PartialEq, Debug, Serialize, Deserialize)]
 pub struct Innovation {
     /// Who.
     pub platform: Platform,

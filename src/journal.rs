@@ -1,14 +1,18 @@
 //! The journal: SQLite in the state directory. A restart resumes from it at once and equal.
 //!
 //! It keeps the ledger of files by content, every copy of every held report with its provenance,
-//! the names of systems that are settled, and the watchkeeper's decisions. A file and its reports
+//! the names of systems and the analyses of hours that are settled, and the watchkeeper's decisions. A file and its reports
 //! are written in one transaction, so that a kill between any two writes loses whole files at
 //! most, and those are read again. A row that cannot be read is told and passed over.
 
+use std::ops::RangeInclusive;
 use std::path::{Path, PathBuf};
+use std::sync::Arc;
 
 use rusqlite::{Connection, OptionalExtension as _, params};
 
+use crate::analysis::HourAnalysis;
+use crate::analysis::settled::Settled;
 use crate::feed::content::content_name;
 use crate::feed::intake::ReadFile;
 use crate::instant::Hour;
@@ -18,7 +22,8 @@ use crate::picture::Decisions;
 use crate::systems::names::NameBook;
 
 /// Migrations in order; the database's `user_version` counts those that were done.
-const MIGRATIONS: &[&str] = &[include_str!("journal/0001_first.sql")];
+const MIGRATIONS: &[&str] =
+    &[include_str!("journal/0001_first.sql"), include_str!("journal/0002_settled.sql")];
 /// Milliseconds to wait for another program's hold on the file.
 const BUSY_MS: u64 = 5000;
 
@@ -69,6 +74,8 @@ pub struct Resumed {
     pub names: NameBook,
     /// Decisions.
     pub decisions: Decisions,
+    /// Analyses of settled hours.
+    pub settled: Settled,
     /// Rows that could not be read.
     pub unreadable: usize,
 }
@@ -181,7 +188,18 @@ impl Journal {
             }
             let names = self.kept("names", &mut unreadable)?.unwrap_or_default();
             let decisions = self.kept("decisions", &mut unreadable)?.unwrap_or_default();
-            Ok(Resumed { held, names, decisions, unreadable: 0 })
+            let mut settled = Settled::new();
+            let mut statement = self.connection.prepare("SELECT analysis FROM settled")?;
+            let mut found = statement.query([])?;
+            while let Some(row) = found.next()? {
+                match HourAnalysis::from_bytes(&row.get::<_, Vec<u8>>(0)?) {
+                    Some(analysis) => {
+                        settled.insert(analysis.hour, Arc::new(analysis));
+                    }
+                    None => unreadable += 1,
+                }
+            }
+            Ok(Resumed { held, names, decisions, settled, unreadable: 0 })
         };
         let mut read = read;
         let resumed = read().map_err(|source| self.failed(source))?;
@@ -266,7 +284,35 @@ impl Journal {
         self.keep("decisions", decisions)
     }
 
-    /// Lets go of reports of hours before `hour`; the ledger stays.
+    /// Keeps the analysis of a settled hour, in place of an earlier one of that hour.
+    ///
+    /// # Errors
+    ///
+    /// [`JournalError::Database`].
+    pub fn keep_settled(&self, analysis: &HourAnalysis) -> Result<(), JournalError> {
+        self.connection
+            .execute(
+                "INSERT OR REPLACE INTO settled (hour, analysis) VALUES (?1, ?2)",
+                params![analysis.hour.unix_h(), analysis.to_bytes()],
+            )
+            .map(|_| ())
+            .map_err(|source| self.failed(source))
+    }
+
+    /// Takes the settled analyses of a range of hours back: a decision concerns them.
+    ///
+    /// # Errors
+    ///
+    /// [`JournalError::Database`].
+    pub fn unsettle(&self, hours: &RangeInclusive<Hour>) -> Result<(), JournalError> {
+        let (first, last) = (hours.start().unix_h(), hours.end().unix_h());
+        self.connection
+            .execute("DELETE FROM settled WHERE hour BETWEEN ?1 AND ?2", [first, last])
+            .map(|_| ())
+            .map_err(|source| self.failed(source))
+    }
+
+    /// Lets go of reports and analyses of hours before `hour`; the ledger stays.
     ///
     /// # Errors
     ///
@@ -274,6 +320,9 @@ impl Journal {
     pub fn forget_before(&self, hour: Hour) -> Result<(), JournalError> {
         self.connection
             .execute("DELETE FROM report WHERE hour < ?1", [hour.unix_h()])
+            .and_then(|_| {
+                self.connection.execute("DELETE FROM settled WHERE hour < ?1", [hour.unix_h()])
+            })
             .map(|_| ())
             .map_err(|source| self.failed(source))
     }
@@ -341,6 +390,49 @@ mod tests {
     }
 
     #[test]
+    fn settled_hours_come_back_bit_for_bit_and_can_be_opened_again() {
+        let journal = Journal::in_memory().expect("a journal");
+        let grid = Arc::new(crate::field::Grid::fitted(40.0, 60.0, -30.0, 0.0, 12, 11));
+        let hour = |h: i64| {
+            let pressure = (0..grid.len()).map(|k| 1000.0 + (k as f64).sqrt() / 3.0).collect();
+            let error = vec![0.7; grid.len()];
+            HourAnalysis::from_field(Hour::from_unix_h(h), Arc::clone(&grid), pressure, error)
+        };
+        for h in 100..104 {
+            journal.keep_settled(&hour(h)).expect("kept");
+        }
+        journal.keep_settled(&hour(103)).expect("kept again is kept once");
+        let resumed = journal.resume().expect("resumed");
+        assert_eq!(resumed.settled.len(), 4);
+        assert_eq!(*resumed.settled[&Hour::from_unix_h(102)], hour(102));
+        journal.unsettle(&(Hour::from_unix_h(101)..=Hour::from_unix_h(102))).expect("opened");
+        journal.forget_before(Hour::from_unix_h(101)).expect("forgotten");
+        let left: Vec<i64> =
+            journal.resume().expect("resumed").settled.keys().map(|hour| hour.unix_h()).collect();
+        assert_eq!(left, [103]);
+    }
+
+    #[test]
+    fn a_journal_of_the_first_schema_opens_with_what_it_held() {
+        let folder = tempfile::tempdir().expect("a folder");
+        let path = folder.path().join("j.sqlite");
+        let read = file("a.txt", SYNOP);
+        {
+            let connection = Connection::open(&path).expect("made");
+            connection.execute_batch(MIGRATIONS[0]).expect("the first schema");
+            connection.pragma_update(None, "user_version", 1).expect("set");
+            let row = serde_json::to_string(&read.rows[0]).expect("text");
+            connection
+                .execute("INSERT INTO report (hour, content, row) VALUES (1, 'x', ?1)", [row])
+                .expect("put in");
+        }
+        let journal = Journal::open(&path).expect("brought up to date");
+        let resumed = journal.resume().expect("resumed");
+        assert_eq!((resumed.held.counts().held, resumed.unreadable), (1, 0));
+        assert!(resumed.settled.is_empty());
+    }
+
+    #[test]
     fn a_newer_journal_is_not_touched() {
         let folder = tempfile::tempdir().expect("a folder");
         let path = folder.path().join("state").join("j.sqlite");
@@ -349,6 +441,6 @@ mod tests {
         connection.pragma_update(None, "user_version", 99).expect("set");
         drop(connection);
         let error = Journal::open(&path).expect_err("newer");
-        assert!(error.to_string().contains("version 99, this program knows up to 1"), "{error}");
+        assert!(error.to_string().contains("version 99, this program knows up to 2"), "{error}");
     }
 }

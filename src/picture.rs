@@ -20,7 +20,7 @@ mod point;
 mod workshop;
 
 pub use point::PointValues;
-pub use workshop::{Inputs, Workshop, picture};
+pub use workshop::{Inputs, Workshop, picture, settled_until};
 
 /// The whole result, immutable: screen and paper show it and compute nothing of their own.
 #[derive(Clone, PartialEq, Debug)]

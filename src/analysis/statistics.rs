@@ -16,11 +16,11 @@ use super::solve::{Factor, dot};
 use crate::quantity::whole_below;
 
 /// What was learnt.
-#[derive(Clone, Copy, PartialEq, Debug)]
+#[derive(Clone, Copy, PartialEq, Debug, serde::Serialize, serde::Deserialize)]
 pub struct Statistics {
     /// Standard deviation of the departures of pressure, hPa, 4 to 20.
     pub sigma_hpa: f64,
-    /// Length scale of the Matern function of order 5/2, km, 600 to 1700.
+    /// Length scale of the Matern function of order 5/2, km, 650 to 1750.
     pub length_km: f64,
     /// Time scale, h, 5 to 30.
     pub time_h: f64,

@@ -105,6 +105,7 @@ pub fn situation(
             catalogue: &configured.catalogue,
             decisions: &Decisions::default(),
             names: &NameBook::default(),
+            settled: &std::collections::BTreeMap::new(),
             settings: &configured.settings,
         },
         now,

@@ -71,6 +71,7 @@ pub fn run(arguments: &Watch) -> anyhow::Result<u8> {
     let worker = Worker {
         held: resumed.held,
         names: resumed.names,
+        settled: resumed.settled,
         decisions: resumed.decisions,
         catalogue: configured.catalogue,
         settings: configured.settings.clone(),

@@ -12,6 +12,7 @@ use rayon::prelude::*;
 use super::{Decisions, Picture, arrivals};
 use crate::alert::{Evidence, raise};
 use crate::analysis::region::fit_region;
+use crate::analysis::settled::Settled;
 use crate::analysis::{AnalysisSettings, HourAnalysis, analyse, fingerprint};
 use crate::field::Grid;
 use crate::instant::{Hour, Instant};
@@ -51,6 +52,9 @@ pub struct Inputs<'i> {
     pub decisions: &'i Decisions,
     /// Names of systems that are settled.
     pub names: &'i NameBook,
+    /// Analyses of hours that are settled: what an hour was when it settled stands, whatever came
+    /// later. Only hours older than the settling time are looked up.
+    pub settled: &'i Settled,
     /// The configuration.
     pub settings: &'i Settings,
 }
@@ -87,7 +91,16 @@ impl Workshop {
         let valid = newest_pressure(&by_hour).unwrap_or(latest);
         let grid = region(settings, &by_hour, valid);
         let analysis_settings = settings.analysis(&inputs.decisions.overruled);
-        let hours = self.analyses(&grid, &by_hour, valid, settings.window_h, &analysis_settings);
+        let boundary = settled_until(settings, now);
+        let settled = inputs.settled.range(..=boundary);
+        let settled: Settled = settled.map(|(hour, kept)| (*hour, Arc::clone(kept))).collect();
+        let hours = self.analyses(
+            &grid,
+            &by_hour,
+            &settled,
+            (valid, settings.window_h),
+            &analysis_settings,
+        );
         let followed = self.follow(inputs, &hours, &by_hour, valid, now);
         let wind_fields = self.fields(&hours, &followed);
         let newest = hours.last().filter(|analysis| analysis.hour == valid);
@@ -183,8 +196,8 @@ impl Workshop {
         &mut self,
         grid: &Arc<Grid>,
         by_hour: &ByHour,
-        valid: Hour,
-        window_h: i64,
+        settled: &Settled,
+        (valid, window_h): (Hour, i64),
         settings: &AnalysisSettings,
     ) -> Vec<Arc<HourAnalysis>> {
         let wanted: Vec<Hour> = (0..window_h)
@@ -199,6 +212,9 @@ impl Workshop {
         let made: Vec<Arc<HourAnalysis>> = wanted
             .par_iter()
             .map(|hour| {
+                if let Some(kept) = settled.get(hour).filter(|kept| kept.grid == *grid) {
+                    return Arc::clone(kept);
+                }
                 let print = fingerprint(grid, *hour, by_hour, settings);
                 match kept.get(hour) {
                     Some(old) if old.fingerprint == print && old.grid == *grid => Arc::clone(old),
@@ -245,7 +261,7 @@ impl Workshop {
             .map(|one| one.position)
             .collect();
         let Decisions { renamed, dismissed, .. } = inputs.decisions;
-        let settled = now.hour_floor().plus(-inputs.settings.settling_h);
+        let settled = settled_until(inputs.settings, now);
         follow(&centres, &reports, inputs.names, settled, &Wishes { renamed, dismissed })
     }
 
@@ -277,6 +293,11 @@ impl Workshop {
 fn is_informed(analysis: &HourAnalysis) -> bool {
     let own = analysis.innovations.iter().filter(|one| one.pressure_hpa.is_some()).count();
     own > 0 && own * 10 >= analysis.pressures_used
+}
+
+/// The newest hour that is settled at a time.
+pub fn settled_until(settings: &Settings, now: Instant) -> Hour {
+    now.hour_floor().plus(-settings.settling_h)
 }
 
 /// Observations by hour up to the newest hour, without those of the future.

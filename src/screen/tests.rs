@@ -252,6 +252,7 @@ fn the_sample_feeds_fill_the_screen() {
             catalogue: &crate::obs::Catalogue::built_in(),
             decisions: &crate::picture::Decisions::default(),
             names: &crate::systems::names::NameBook::default(),
+            settled: &std::collections::BTreeMap::new(),
             settings: &settings,
         };
         let (picture, _) = crate::picture::picture(&inputs, now);

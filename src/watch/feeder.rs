@@ -74,18 +74,20 @@ pub fn run(folder: &Path, poll: bool, limit: &dyn Fn() -> Instant, out: &Sender<
                     list.unread(name);
                 }
             }
-            // The first look is told even where it found nothing: now that is known.
-            if (!read.is_empty() || !told) && out.send(Task::Files(read)).is_err() {
+            // That there is nothing is told once, when nothing is on its way either.
+            let tell = !read.is_empty() || (!told && !list.waits());
+            if tell && out.send(Task::Files(read)).is_err() {
                 return;
             }
+            told |= tell;
         } else {
             if !told && out.send(Task::Files(Vec::new())).is_err() {
                 return;
             }
+            told = true;
             // The folder is gone: its watch is too. It is armed again when the folder returns.
             watcher = None;
         }
-        told = true;
         let patience = if watcher.is_none() || list.waits() { POLL } else { RESCAN };
         if !wait(&woken, patience, &mut finished) {
             return;

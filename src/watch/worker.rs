@@ -1,18 +1,25 @@
 //! The worker: the one place that changes what is held, keeps the journal and makes Pictures.
 
+use std::collections::BTreeMap;
 use std::panic::{AssertUnwindSafe, catch_unwind};
+use std::sync::Arc;
 use std::sync::mpsc::{Receiver, Sender};
 
 use super::Message;
 use super::clock::Clock;
+use crate::analysis::settled::Settled;
 use crate::feed::intake::{ReadFile, take_in};
 use crate::instant::{Hour, Instant};
 use crate::journal::Journal;
 use crate::obs::{Catalogue, Held, Verdict};
-use crate::picture::{Decisions, Inputs, Workshop};
+use crate::picture::{Decisions, Inputs, Picture, Workshop, settled_until};
 use crate::settings::Settings;
 use crate::systems::names::NameBook;
 
+/// Seconds of the watch's clock for which an old hour must stand unchanged before it is settled.
+const STANDS_S: i64 = 600;
+/// Old hours: the fingerprint of each, and since when it has stood.
+type Standing = BTreeMap<Hour, (u64, Instant)>;
 /// Hours that reports are kept beyond the window: tendencies and traces reach back a day.
 const KEPT_BEYOND_H: i64 = 48;
 
@@ -42,6 +49,8 @@ pub struct Worker {
     pub held: Held,
     /// Settled names.
     pub names: NameBook,
+    /// Analyses of settled hours.
+    pub settled: Settled,
     /// Decisions.
     pub decisions: Decisions,
     /// The catalogue.
@@ -58,10 +67,11 @@ impl Worker {
     /// Works until it is told to end or nobody listens any more.
     pub fn run(mut self, tasks: &Receiver<Task>, out: &Sender<Message>) {
         let mut workshop = Workshop::new();
+        let mut standing = Standing::new();
         // With nothing held yet the first look into the folder comes first: an empty picture would
         // say that there is no feed before anybody has looked.
         if self.held.counts().held > 0 {
-            self.make(&mut workshop, out);
+            self.make(&mut workshop, &mut standing, out);
         }
         let mut looked = false;
         while let Ok(first) = tasks.recv() {
@@ -82,7 +92,7 @@ impl Worker {
             if !files.is_empty() {
                 changed |= self.take(files, out);
             }
-            if changed && !self.make(&mut workshop, out) {
+            if changed && !self.make(&mut workshop, &mut standing, out) {
                 return;
             }
         }
@@ -122,9 +132,11 @@ impl Worker {
                 self.decisions.renamed.insert(computed, to);
             }
             Task::Overrule(key, Some(verdict)) => {
+                self.unsettle(&key);
                 self.decisions.overruled.insert(key, verdict);
             }
             Task::Overrule(key, None) => {
+                self.unsettle(&key);
                 self.decisions.overruled.remove(&key);
             }
             Task::Files(_) | Task::Time | Task::End => return false,
@@ -139,7 +151,12 @@ impl Worker {
 
     /// Makes a Picture and hands it over; false where nobody listens. A failure is told, and the
     /// last Picture stands.
-    fn make(&mut self, workshop: &mut Workshop, out: &Sender<Message>) -> bool {
+    fn make(
+        &mut self,
+        workshop: &mut Workshop,
+        standing: &mut Standing,
+        out: &Sender<Message>,
+    ) -> bool {
         let now = self.clock.now();
         self.forget(now);
         let outcome = catch_unwind(AssertUnwindSafe(|| {
@@ -148,6 +165,7 @@ impl Worker {
                 catalogue: &self.catalogue,
                 decisions: &self.decisions,
                 names: &self.names,
+                settled: &self.settled,
                 settings: &self.settings,
             };
             workshop.picture(&inputs, now)
@@ -165,7 +183,50 @@ impl Worker {
                 let _ = out.send(Message::Trouble(error.to_string()));
             }
         }
+        self.settle(&picture, standing, out);
         out.send(Message::Picture(Box::new(picture))).is_ok()
+    }
+
+    /// Settles the hours of a Picture that are old enough and have stood unchanged for a while: a
+    /// feed that comes in all at once must not freeze hours that it is still filling.
+    fn settle(&mut self, picture: &Picture, standing: &mut Standing, out: &Sender<Message>) {
+        let until = settled_until(&self.settings, picture.now);
+        standing.retain(|hour, _| picture.hour(*hour).is_some());
+        for analysis in picture.hours.iter().filter(|analysis| analysis.hour <= until) {
+            let stands = standing
+                .entry(analysis.hour)
+                .and_modify(|(print, since)| {
+                    if *print != analysis.fingerprint {
+                        (*print, *since) = (analysis.fingerprint, picture.now);
+                    }
+                })
+                .or_insert((analysis.fingerprint, picture.now));
+            let kept = self.settled.get(&analysis.hour);
+            let known = kept.is_some_and(|kept| kept.grid == analysis.grid);
+            if known || picture.now.seconds_since(stands.1) < STANDS_S {
+                continue;
+            }
+            if let Some(journal) = &self.journal
+                && let Err(error) = journal.keep_settled(analysis)
+            {
+                let _ = out.send(Message::Trouble(error.to_string()));
+            }
+            self.settled.insert(analysis.hour, Arc::clone(analysis));
+        }
+        let oldest = picture.valid.plus(-self.settings.window_h);
+        self.settled.retain(|hour, _| *hour >= oldest);
+    }
+
+    /// A decision about a report opens the hours that it enters.
+    fn unsettle(&mut self, key: &str) {
+        let Some(time) = key.rsplit(' ').next().and_then(Instant::parse) else { return };
+        let first = time.hour_floor();
+        let hours = first..=first.plus(self.settings.memory_h + 1);
+        self.settled.retain(|hour, _| !hours.contains(hour));
+        if let Some(journal) = &self.journal {
+            // What cannot be deleted now is written over when the hours settle again.
+            let _ = journal.unsettle(&hours);
+        }
     }
 
     fn forget(&mut self, now: Instant) {

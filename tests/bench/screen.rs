@@ -38,6 +38,7 @@ pub(crate) fn run() {
         catalogue: &Catalogue::built_in(),
         decisions: &Decisions::default(),
         names: &NameBook::default(),
+        settled: &std::collections::BTreeMap::new(),
         settings: &settings,
     };
     let (picture, _) = picture(&inputs, now);

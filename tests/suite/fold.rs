@@ -1,5 +1,6 @@
 //! From files to a Picture, as the watch does it, without a folder or a clock.
 
+use glasskeeper::analysis::settled::Settled;
 use glasskeeper::feed::intake::{read_file, take_in};
 use glasskeeper::instant::Instant;
 use glasskeeper::obs::{Catalogue, Held};
@@ -26,11 +27,22 @@ pub(crate) fn held_until(files: &[FeedFile], now: Instant) -> Held {
 
 /// The Picture without decisions and without a past.
 pub(crate) fn look(held: &Held, settings: &Settings, now: Instant) -> Picture {
+    look_with(held, settings, &Settled::new(), now)
+}
+
+/// The Picture with hours that are settled.
+pub(crate) fn look_with(
+    held: &Held,
+    settings: &Settings,
+    settled: &Settled,
+    now: Instant,
+) -> Picture {
     let inputs = Inputs {
         held,
         catalogue: &Catalogue::built_in(),
         decisions: &Decisions::default(),
         names: &NameBook::default(),
+        settled,
         settings,
     };
     picture(&inputs, now).0

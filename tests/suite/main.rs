@@ -15,6 +15,7 @@ mod rehearse_read;
 mod rehearse_samples;
 mod rehearse_truth;
 mod scenario;
+mod settled;
 mod storm_1996;
 mod systems_fields;
 mod systems_tracks;

@@ -1,0 +1,1 @@
+CREATE TABLE settled (hour INTEGER PRIMARY KEY, analysis BLOB NOT NULL);
